@@ -1,0 +1,71 @@
+#include "check/setup.h"
+
+#include "physics/cure.h"
+#include "physics/separation.h"
+#include "physics/strength.h"
+
+#include <math.h>
+
+/* A load is not worth a solve below a hundredth of what the smallest tip can carry, nor above a
+ * hundredth of the limits. Unlike a share of "the largest load so far" this depends on the job
+ * alone, so that the order in which layers are solved cannot change a byte. */
+static double unsolved_below(const fw_job *job)
+{
+    const double tip_mm = job->has_rules ? job->rules.tip_mm[0] : 0.3;
+    double least = fw_strength_tension_N(job->resin.tensile_MPa, acos(-1.0) / 4 * tip_mm * tip_mm);
+    if (job->machine.drive_limit_N > 0)
+        least = fmin(least, job->machine.drive_limit_N);
+    if (job->max_peel_N > 0)
+        least = fmin(least, job->max_peel_N);
+    return least / 100;
+}
+
+static void set_loads(fw_setup *setup, const fw_job *job)
+{
+    const fw_resin *resin = &job->resin;
+    const fw_machine *machine = &job->machine;
+    setup->q = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s, machine->gap_um);
+    for (int end = 0; end < 2; end++)
+        setup->q_range[end] = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s,
+                                              machine->gap_range_um[end]);
+    setup->cap_MPa = machine->cap_kPa / 1000;
+    setup->unsolved_N = unsolved_below(job);
+}
+
+fw_setup fw_setup_make(const fw_job *job, int32_t width, int32_t height, int32_t layers,
+                       int32_t lift, int32_t full)
+{
+    fw_setup setup = {.job = job,
+                      .width = width,
+                      .height = height,
+                      .layers = layers,
+                      .lift = lift,
+                      .full = full,
+                      .px_mm = job->pixel_um[0] / 1000,
+                      .py_mm = job->pixel_um[1] / 1000,
+                      .t_mm = job->layer_um / 1000,
+                      .intended_least = fw_cure_intended_least(job->intent_level, full),
+                      .reach_mm = INFINITY,
+                      .smallest_tip_mm = job->has_rules ? job->rules.tip_mm[0] : 0,
+                      .loads = job->has_resin && job->has_machine};
+    setup.solid_least = setup.intended_least;
+    if (job->has_resin) {
+        const double degree = acos(-1.0) / 180;
+        setup.solid_least = fw_cure_solid_least(&job->resin, job->layer_um, full);
+        setup.credit_mm = setup.t_mm / tan(job->resin.angle_deg * degree);
+        setup.reach_mm = job->resin.reach_mm;
+    }
+    if (setup.loads)
+        set_loads(&setup, job);
+    return setup;
+}
+
+double fw_setup_x(const fw_setup *setup, double x)
+{
+    return (x + 0.5) * setup->px_mm;
+}
+
+double fw_setup_y(const fw_setup *setup, double y)
+{
+    return (y + 0.5) * setup->py_mm;
+}

@@ -1,0 +1,40 @@
+/* The values of the two cards, as the physics wants them. Read from YAML by src/cards. */
+#ifndef FW_PHYSICS_CARDS_H
+#define FW_PHYSICS_CARDS_H
+
+#include <stdbool.h>
+
+enum { FW_CARD_TEXT = 128 };
+
+/* Where a group of card values comes from. */
+typedef enum fw_basis { FW_ASSUMED, FW_SUPPLIER, FW_MEASURED } fw_basis;
+
+typedef struct fw_resin {
+    char name[FW_CARD_TEXT];
+    char lot[FW_CARD_TEXT]; /* empty when not given */
+    fw_basis basis_viscosity, basis_cure, basis_green, basis_support;
+    double viscosity_mPa_s;
+    double penetration_um;  /* Dp, working curve */
+    double critical_mJ_cm2; /* Ec, working curve */
+    double exposure_mJ_cm2; /* E0 at the window, fully lit */
+    double joint_ratio;     /* dose through the layer over Ec that makes a joint, >= 1 */
+    double tensile_MPa;     /* green */
+    double modulus_MPa;     /* green */
+    double plate_adhesion_MPa;
+    double reach_mm;  /* how far fresh solid may extend from what holds it */
+    double angle_deg; /* self-supporting angle from the plate */
+} fw_resin;
+
+typedef struct fw_machine {
+    char name[FW_CARD_TEXT];
+    fw_basis basis_separation, basis_frame;
+    double speed_mm_s;      /* separation speed at the plate */
+    double gap_um;          /* liquid film between layer and window */
+    double gap_range_um[2]; /* both gap_um when not given */
+    double cap_kPa;         /* suction that the liquid can hold, gauge */
+    double drive_limit_N;   /* 0 = not given */
+    double plate_mm[2];
+    int mask_px[2]; /* 0, 0 = not given */
+} fw_machine;
+
+#endif

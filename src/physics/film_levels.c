@@ -1,0 +1,432 @@
+#include "physics/film_levels.h"
+
+#include "fault/memory.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+static const char holder[] = "grids of the peel film";
+
+static fw_status numbers(double **out, size_t count, fw_fault *fault)
+{
+    return fw_allocate((void **)out, count, sizeof(double), holder, fault);
+}
+
+static fw_status indices(uint32_t **out, size_t count, fw_fault *fault)
+{
+    return fw_allocate((void **)out, count, sizeof(uint32_t), holder, fault);
+}
+
+static fw_status allocate_nodes(fw_film_level *level, fw_fault *fault)
+{
+    size_t n = level->nodes;
+    double **array[] = {&level->wall,      &level->source,  &level->x,           &level->y,
+                        &level->area,      &level->to_held, &level->wall_factor, &level->inverse,
+                        &level->held_wall, &level->load,    &level->solution,    &level->rest};
+    for (size_t i = 0; i < sizeof array / sizeof *array; i++)
+        FW_TRY(numbers(array[i], n, fault));
+    FW_TRY(indices(&level->row, n + 1, fault));
+    FW_TRY(indices(&level->coarse_node, n, fault));
+    FW_TRY(fw_allocate((void **)&level->cavity, n, sizeof *level->cavity, holder, fault));
+    FW_TRY(fw_allocate((void **)&level->block_x, n, sizeof *level->block_x, holder, fault));
+    return fw_allocate((void **)&level->block_y, n, sizeof *level->block_y, holder, fault);
+}
+
+static fw_status allocate_entries(fw_film_level *level, size_t entries, fw_fault *fault)
+{
+    FW_TRY(indices(&level->col, entries, fault));
+    FW_TRY(indices(&level->coarse_entry, entries, fault));
+    FW_TRY(numbers(&level->conductance, entries, fault));
+    FW_TRY(numbers(&level->held_conductance, entries, fault));
+    return numbers(&level->entry_factor, entries, fault);
+}
+
+static void free_level(fw_film_level *level)
+{
+    void *array[] = {level->row,
+                     level->col,
+                     level->conductance,
+                     level->wall,
+                     level->source,
+                     level->x,
+                     level->y,
+                     level->area,
+                     level->block_x,
+                     level->block_y,
+                     level->cavity,
+                     level->coarse_node,
+                     level->coarse_entry,
+                     level->entry_factor,
+                     level->wall_factor,
+                     level->held_conductance,
+                     level->held_wall,
+                     level->to_held,
+                     level->inverse,
+                     level->solution,
+                     level->load,
+                     level->rest};
+    for (size_t i = 0; i < sizeof array / sizeof *array; i++)
+        free(array[i]);
+    *level = (fw_film_level){0};
+}
+
+void fw_film_levels_free(fw_film_levels *levels)
+{
+    for (uint32_t l = 0; l < levels->count; l++)
+        free_level(&levels->level[l]);
+    levels->count = 0;
+}
+
+/* ---- the finest level ---- */
+
+static void copy_nodes(const fw_film_grid *grid, fw_film_level *level)
+{
+    for (uint32_t i = 0; i < level->nodes; i++) {
+        level->area[i] = level->source[i] = grid->area[i];
+        level->x[i] = grid->x[i];
+        level->y[i] = grid->y[i];
+        level->block_x[i] = grid->block_x[i];
+        level->block_y[i] = grid->block_y[i];
+        level->cavity[i] = i >= grid->cells;
+    }
+}
+
+/* The part of the source that moves from a cell to its sides (see film_grid.h). */
+static void shift_source(const fw_film_grid *grid, fw_film_level *level)
+{
+    double share = 2.0 / 3.0 * (1.0 - 1.0 / ((double)grid->block * grid->block));
+    for (size_t i = 0, end; i < grid->link_count; i = end) {
+        uint32_t cell = grid->link[i].cell;
+        double sum = 0;
+        for (end = i; end < grid->link_count && grid->link[end].cell == cell; end++)
+            sum += grid->link[end].length * grid->link[end].distance;
+        double scale = sum > grid->area[cell] ? share * grid->area[cell] / sum : share;
+        level->source[cell] -= scale * sum;
+        for (size_t k = i; k < end; k++) {
+            if (grid->link[k].target != FW_FILM_VAT)
+                level->source[grid->link[k].target] +=
+                    scale * grid->link[k].length * grid->link[k].distance;
+        }
+    }
+}
+
+static void put(fw_film_level *level, uint32_t *cursor, uint32_t a, uint32_t b, double value)
+{
+    level->col[cursor[a]] = b;
+    level->conductance[cursor[a]++] = value;
+    level->col[cursor[b]] = a;
+    level->conductance[cursor[b]++] = value;
+}
+
+/* Adds up entries of a row that name the same column. seen: [nodes], any content below `base`. */
+static void merge_rows(fw_film_level *level, uint32_t *seen)
+{
+    for (uint32_t i = 0; i < level->nodes; i++)
+        seen[i] = UINT32_MAX;
+    uint32_t kept = 0, from = 0;
+    for (uint32_t i = 0; i < level->nodes; i++) {
+        uint32_t begin = kept, to = level->row[i + 1];
+        for (uint32_t e = from; e < to; e++) {
+            uint32_t j = level->col[e];
+            if (seen[j] != UINT32_MAX && seen[j] >= begin && seen[j] < kept) {
+                level->conductance[seen[j]] += level->conductance[e];
+                continue;
+            }
+            seen[j] = kept;
+            level->col[kept] = j;
+            level->conductance[kept++] = level->conductance[e];
+        }
+        from = to;
+        level->row[i + 1] = kept;
+    }
+}
+
+static double between(const double *x, const double *y, uint32_t a, uint32_t b)
+{
+    return hypot(x[a] - x[b], y[a] - y[b]);
+}
+
+static void count_entries(const fw_film_grid *grid, fw_film_level *level)
+{
+    for (size_t i = 0; i < grid->face_count; i++) {
+        level->row[grid->face[i].a + 1]++;
+        level->row[grid->face[i].b + 1]++;
+    }
+    for (size_t i = 0; i < grid->link_count; i++) {
+        if (grid->link[i].target != FW_FILM_VAT) {
+            level->row[grid->link[i].cell + 1]++;
+            level->row[grid->link[i].target + 1]++;
+        }
+    }
+    for (uint32_t i = 0; i < level->nodes; i++)
+        level->row[i + 1] += level->row[i];
+}
+
+static void fill_entries(const fw_film_grid *grid, fw_film_level *level, uint32_t *cursor)
+{
+    memcpy(cursor, level->row, level->nodes * sizeof *cursor);
+    for (size_t i = 0; i < grid->face_count; i++) {
+        fw_film_face face = grid->face[i];
+        put(level, cursor, face.a, face.b, face.length / between(grid->x, grid->y, face.a, face.b));
+    }
+    for (size_t i = 0; i < grid->link_count; i++) {
+        fw_film_link side = grid->link[i];
+        if (side.target == FW_FILM_VAT)
+            level->wall[side.cell] += side.length / side.distance;
+        else
+            put(level, cursor, side.cell, side.target, side.length / side.distance);
+    }
+}
+
+static fw_status build_finest(const fw_film_grid *grid, fw_film_level *level, fw_fault *fault)
+{
+    level->nodes = grid->cells + grid->cavities;
+    FW_TRY(allocate_nodes(level, fault));
+    copy_nodes(grid, level);
+    shift_source(grid, level);
+    count_entries(grid, level);
+    FW_TRY(allocate_entries(level, level->row[level->nodes], fault));
+    fill_entries(grid, level, level->coarse_node); /* free until the next level is made */
+    merge_rows(level, level->coarse_node);
+    return FW_OK;
+}
+
+/* ---- coarser levels ---- */
+
+static uint32_t root_of(uint32_t *parent, uint32_t i)
+{
+    while (parent[i] != i) {
+        parent[i] = parent[parent[i]];
+        i = parent[i];
+    }
+    return i;
+}
+
+static bool may_join(const fw_film_level *fine, bool joint, uint32_t a, uint32_t b)
+{
+    return (joint || (!fine->cavity[a] && !fine->cavity[b])) &&
+           fine->block_x[a] / 2 == fine->block_x[b] / 2 &&
+           fine->block_y[a] / 2 == fine->block_y[b] / 2;
+}
+
+/* Numbers the groups of nodes that touch within 2 x 2 blocks, by their first nodes. */
+static uint32_t group_nodes(fw_film_level *fine, bool joint)
+{
+    uint32_t *parent = fine->coarse_node, groups = 0;
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        parent[i] = i;
+    for (uint32_t i = 0; i < fine->nodes; i++) {
+        for (uint32_t e = fine->row[i]; e < fine->row[i + 1]; e++) {
+            uint32_t j = fine->col[e];
+            if (j > i && may_join(fine, joint, i, j)) {
+                uint32_t a = root_of(parent, i), b = root_of(parent, j);
+                parent[a < b ? b : a] = a < b ? a : b;
+            }
+        }
+    }
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        parent[i] = root_of(parent, i);
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        parent[i] = parent[i] == i ? groups++ : parent[parent[i]];
+    return groups;
+}
+
+static void gather_nodes(const fw_film_level *fine, fw_film_level *coarse)
+{
+    for (uint32_t i = 0; i < fine->nodes; i++) {
+        uint32_t c = fine->coarse_node[i];
+        coarse->area[c] += fine->area[i];
+        coarse->x[c] += fine->area[i] * fine->x[i];
+        coarse->y[c] += fine->area[i] * fine->y[i];
+        coarse->source[c] += fine->source[i];
+        coarse->wall_factor[c] += fine->wall[i]; /* the sum for now */
+        coarse->block_x[c] = fine->block_x[i] / 2;
+        coarse->block_y[c] = fine->block_y[i] / 2;
+        coarse->cavity[c] = !coarse->joint && fine->cavity[i];
+    }
+    for (uint32_t c = 0; c < coarse->nodes; c++) {
+        coarse->x[c] /= coarse->area[c];
+        coarse->y[c] /= coarse->area[c];
+    }
+}
+
+/* member[start[c]] .. are the fine nodes of coarse node c. start: [coarse + 1], zeroed. */
+static void list_members(const fw_film_level *fine, uint32_t coarse_nodes, uint32_t *start,
+                         uint32_t *member)
+{
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        start[fine->coarse_node[i] + 1]++;
+    for (uint32_t c = 0; c < coarse_nodes; c++)
+        start[c + 1] += start[c];
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        member[start[fine->coarse_node[i]]++] = i;
+    for (uint32_t c = coarse_nodes; c > 0; c--)
+        start[c] = start[c - 1];
+    start[0] = 0;
+}
+
+/* Makes row c of the coarse matrix: entry_factor gets the sum of the fine conductances, conductance
+ * the sum of conductance times distance. */
+static void gather_row(fw_film_level *fine, fw_film_level *coarse, uint32_t c,
+                       const uint32_t *start, const uint32_t *member, uint32_t *seen)
+{
+    uint32_t begin = coarse->row[c], end = begin;
+    for (uint32_t m = start[c]; m < start[c + 1]; m++) {
+        uint32_t i = member[m];
+        for (uint32_t e = fine->row[i]; e < fine->row[i + 1]; e++) {
+            uint32_t to = fine->coarse_node[fine->col[e]];
+            fine->coarse_entry[e] = FW_FILM_VAT;
+            if (to == c)
+                continue;
+            if (seen[to] == UINT32_MAX || seen[to] < begin) {
+                seen[to] = end;
+                coarse->col[end] = to;
+                coarse->entry_factor[end] = coarse->conductance[end] = 0;
+                end++;
+            }
+            fine->coarse_entry[e] = seen[to];
+            coarse->entry_factor[seen[to]] += fine->conductance[e];
+            coarse->conductance[seen[to]] +=
+                fine->conductance[e] * between(fine->x, fine->y, i, fine->col[e]);
+        }
+    }
+    coarse->row[c + 1] = end;
+}
+
+static double held_within(double value, double low, double high)
+{
+    return value < low ? low : value > high ? high : value;
+}
+
+/* Conductances between cells from the coarse geometry; on a joint level one half of the sum, the
+ * value for blocks of a regular network; to cavities zero, the sides are added later. */
+static void set_conductances(fw_film_level *coarse)
+{
+    for (uint32_t c = 0; c < coarse->nodes; c++) {
+        for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++) {
+            uint32_t to = coarse->col[e];
+            double sum = coarse->entry_factor[e];
+            if (coarse->joint)
+                coarse->conductance[e] = 0.5 * sum;
+            else if (coarse->cavity[c] || coarse->cavity[to])
+                coarse->conductance[e] = 0;
+            else
+                coarse->conductance[e] = held_within(
+                    coarse->conductance[e] / between(coarse->x, coarse->y, c, to), 0.5 * sum, sum);
+        }
+    }
+}
+
+static uint32_t entry_of(const fw_film_level *level, uint32_t i, uint32_t j)
+{
+    uint32_t e = level->row[i];
+    while (level->col[e] != j)
+        e++;
+    return e;
+}
+
+/* Moves the sides of the cells to the coarse ones, with the distances to the new centroids. */
+static void move_sides(fw_film_grid *grid, const fw_film_level *fine, fw_film_level *coarse)
+{
+    for (size_t i = 0; i < grid->link_count; i++) {
+        fw_film_link *side = &grid->link[i];
+        uint32_t from = side->cell, to = fine->coarse_node[from];
+        double moved =
+            side->nx * (fine->x[from] - coarse->x[to]) + side->ny * (fine->y[from] - coarse->y[to]);
+        side->distance = held_within(side->distance + moved, side->distance, 2 * side->distance);
+        side->cell = to;
+        if (side->target == FW_FILM_VAT) {
+            coarse->wall[to] += side->length / side->distance;
+            continue;
+        }
+        side->target = fine->coarse_node[side->target];
+        coarse->conductance[entry_of(coarse, to, side->target)] += side->length / side->distance;
+    }
+    for (uint32_t c = 0; c < coarse->nodes; c++) {
+        if (!coarse->cavity[c])
+            continue;
+        for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++)
+            coarse->conductance[e] = coarse->conductance[entry_of(coarse, coarse->col[e], c)];
+    }
+}
+
+static void set_factors(fw_film_level *coarse)
+{
+    for (uint32_t c = 0; c < coarse->nodes; c++) {
+        if (coarse->joint)
+            coarse->wall[c] = coarse->wall_factor[c];
+        coarse->wall_factor[c] =
+            coarse->wall_factor[c] > 0 ? coarse->wall[c] / coarse->wall_factor[c] : 1;
+        for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++)
+            coarse->entry_factor[e] = coarse->conductance[e] / coarse->entry_factor[e];
+    }
+}
+
+static fw_status build_coarser(fw_film_grid *grid, fw_film_level *fine, fw_film_level *coarse,
+                               uint32_t *scratch[3], fw_fault *fault)
+{
+    uint32_t *start = scratch[0], *member = scratch[1], *seen = scratch[2];
+    FW_TRY(allocate_nodes(coarse, fault));
+    FW_TRY(allocate_entries(coarse, fine->row[fine->nodes], fault));
+    gather_nodes(fine, coarse);
+    memset(start, 0, ((size_t)coarse->nodes + 1) * sizeof *start);
+    memset(seen, 0xff, coarse->nodes * sizeof *seen);
+    list_members(fine, coarse->nodes, start, member);
+    for (uint32_t c = 0; c < coarse->nodes; c++)
+        gather_row(fine, coarse, c, start, member, seen);
+    set_conductances(coarse);
+    if (!coarse->joint)
+        move_sides(grid, fine, coarse);
+    set_factors(coarse);
+    return FW_OK;
+}
+
+static bool one_block(const fw_film_level *level)
+{
+    for (uint32_t i = 0; i < level->nodes; i++) {
+        if (level->block_x[i] != 0 || level->block_y[i] != 0)
+            return false;
+    }
+    return true;
+}
+
+static bool want_joint(const fw_film_level *fine)
+{
+    uint32_t cavities = 0;
+    for (uint32_t i = 0; i < fine->nodes; i++)
+        cavities += fine->cavity[i];
+    return fine->joint || fine->nodes < 3 * cavities;
+}
+
+static fw_status build_all(fw_film_grid *grid, fw_film_levels *out, uint32_t *scratch[3],
+                           fw_fault *fault)
+{
+    while (out->count < FW_FILM_LEVELS) {
+        fw_film_level *fine = &out->level[out->count - 1], *coarse = fine + 1;
+        if (fine->nodes <= FW_FILM_DIRECT || one_block(fine))
+            break;
+        bool joint = want_joint(fine);
+        *coarse = (fw_film_level){.nodes = group_nodes(fine, joint), .joint = joint};
+        out->count++;
+        FW_TRY(build_coarser(grid, fine, coarse, scratch, fault));
+    }
+    return FW_OK;
+}
+
+fw_status fw_film_levels_build(fw_film_grid *grid, fw_film_levels *out, fw_fault *fault)
+{
+    uint32_t *scratch[3] = {0};
+    out->count = 1;
+    out->level[0] = (fw_film_level){0};
+    fw_status status = build_finest(grid, &out->level[0], fault);
+    for (int i = 0; i < 3 && status == FW_OK; i++)
+        status = indices(&scratch[i], (size_t)out->level[0].nodes + 1, fault);
+    if (status == FW_OK)
+        status = build_all(grid, out, scratch, fault);
+    for (int i = 0; i < 3; i++)
+        free(scratch[i]);
+    if (status != FW_OK)
+        fw_film_levels_free(out);
+    return status;
+}

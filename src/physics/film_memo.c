@@ -1,0 +1,246 @@
+#include "physics/film_memo.h"
+
+#include <omp.h>
+#include <stdlib.h>
+#include <string.h>
+
+enum { BUCKETS = 4096 };
+
+static const char holder[] = "memo of peel films";
+
+/* All that a result depends on, as bytes: a head, then the arrays in turn. */
+typedef struct key_head {
+    double px_mm, py_mm, limit, tolerance; /* limit: obstacle, or the cap of a curve */
+    int32_t width, height, cell_px, curve;
+    uint32_t film, sealed, cavities, spare;
+} key_head;
+
+typedef struct entry {
+    struct entry *next; /* in its bucket, or in the list of those kept aside */
+    size_t bytes;       /* charged */
+    size_t key_bytes;
+    uint64_t hash;
+    bool asked; /* since the last trim */
+    fw_film_solution solution;
+    fw_film_curve curve;
+    unsigned char key[];
+} entry;
+
+struct fw_film_memo {
+    fw_budget *budget;
+    omp_lock_t lock; /* held for look-ups and inserts only, never while solving */
+    entry *bucket[BUCKETS];
+    entry *aside;
+};
+
+fw_status fw_film_memo_create(fw_budget *budget, fw_film_memo **out, fw_fault *fault)
+{
+    FW_TRY(fw_allocate((void **)out, 1, sizeof **out, holder, fault));
+    (*out)->budget = budget;
+    omp_init_lock(&(*out)->lock);
+    return FW_OK;
+}
+
+static void free_entry(fw_film_memo *memo, entry *old)
+{
+    fw_budget_release(memo->budget, old->bytes);
+    fw_film_solution_free(&old->solution);
+    free(old);
+}
+
+static void free_list(fw_film_memo *memo, entry **list)
+{
+    while (*list != NULL) {
+        entry *old = *list;
+        *list = old->next;
+        free_entry(memo, old);
+    }
+}
+
+void fw_film_memo_free(fw_film_memo *memo)
+{
+    if (memo == NULL)
+        return;
+    for (int b = 0; b < BUCKETS; b++)
+        free_list(memo, &memo->bucket[b]);
+    free_list(memo, &memo->aside);
+    omp_destroy_lock(&memo->lock);
+    free(memo);
+}
+
+static void drop_stale(fw_film_memo *memo, entry **list)
+{
+    while (*list != NULL) {
+        entry *old = *list;
+        if (old->asked) {
+            list = &old->next;
+            continue;
+        }
+        *list = old->next;
+        free_entry(memo, old);
+    }
+}
+
+void fw_film_memo_trim(fw_film_memo *memo)
+{
+    bool pressed = memo->aside != NULL;
+    free_list(memo, &memo->aside);
+    for (int b = 0; b < BUCKETS; b++) {
+        if (pressed)
+            drop_stale(memo, &memo->bucket[b]);
+        for (entry *kept = memo->bucket[b]; kept != NULL; kept = kept->next)
+            kept->asked = false;
+    }
+}
+
+/* ---- the key ---- */
+
+static size_t rows_bytes(const fw_runs *set)
+{
+    return set->row != NULL ? ((size_t)set->height + 1) * sizeof *set->row : 0;
+}
+
+static size_t key_size(const fw_film_shape *shape)
+{
+    size_t sealed = shape->sealed.count > 0
+                        ? rows_bytes(&shape->sealed) +
+                              shape->sealed.count * (sizeof(fw_run) + sizeof *shape->cavity)
+                        : 0;
+    return sizeof(key_head) + rows_bytes(&shape->film) + shape->film.count * sizeof(fw_run) +
+           sealed;
+}
+
+static unsigned char *append(unsigned char *to, const void *from, size_t bytes)
+{
+    if (bytes > 0)
+        memcpy(to, from, bytes);
+    return to + bytes;
+}
+
+static void write_key(const fw_film_shape *shape, const fw_film_options *options, double limit,
+                      bool curve, unsigned char *to)
+{
+    const fw_runs *film = &shape->film, *sealed = &shape->sealed;
+    key_head head = {.px_mm = shape->px_mm,
+                     .py_mm = shape->py_mm,
+                     .limit = limit,
+                     .tolerance = options->work_tolerance,
+                     .width = film->width,
+                     .height = film->height,
+                     .cell_px = options->cell_px,
+                     .curve = curve,
+                     .film = film->count,
+                     .sealed = sealed->count,
+                     .cavities = shape->cavity_count};
+    to = append(to, &head, sizeof head);
+    to = append(to, film->row, rows_bytes(film));
+    to = append(to, film->run, film->count * sizeof *film->run);
+    if (sealed->count == 0)
+        return;
+    to = append(to, sealed->row, rows_bytes(sealed));
+    to = append(to, sealed->run, sealed->count * sizeof *sealed->run);
+    (void)append(to, shape->cavity, sealed->count * sizeof *shape->cavity);
+}
+
+/* FNV-1a, 64 bit (Fowler, Noll, Vo 1991): spreads the keys over the buckets, no more. */
+static uint64_t hash_of(const unsigned char *key, size_t bytes)
+{
+    uint64_t hash = 14695981039346656037u;
+    for (size_t i = 0; i < bytes; i++)
+        hash = (hash ^ key[i]) * 1099511628211u;
+    return hash;
+}
+
+/* ---- look-up ---- */
+
+static entry *find(const fw_film_memo *memo, const entry *like)
+{
+    entry *old = memo->bucket[like->hash % BUCKETS];
+    while (old != NULL && !(old->hash == like->hash && old->key_bytes == like->key_bytes &&
+                            memcmp(old->key, like->key, like->key_bytes) == 0))
+        old = old->next;
+    return old;
+}
+
+static entry *look_up(fw_film_memo *memo, const entry *like)
+{
+    omp_set_lock(&memo->lock);
+    entry *old = find(memo, like);
+    if (old != NULL)
+        old->asked = true;
+    omp_unset_lock(&memo->lock);
+    return old;
+}
+
+/* Keeps the new entry, or drops it where another thread was first: both hold the same bytes. */
+static entry *keep(fw_film_memo *memo, entry *new)
+{
+    omp_set_lock(&memo->lock);
+    entry *old = find(memo, new);
+    if (old == NULL) {
+        entry **list = fw_budget_fits(memo->budget, new->bytes) ? &memo->bucket[new->hash % BUCKETS]
+                                                                : &memo->aside;
+        new->asked = true;
+        new->next = *list;
+        *list = new;
+        fw_budget_charge(memo->budget, new->bytes);
+    }
+    omp_unset_lock(&memo->lock);
+    if (old == NULL)
+        return new;
+    fw_film_solution_free(&new->solution);
+    free(new);
+    return old;
+}
+
+static fw_status compute(const fw_film_shape *shape, const fw_film_options *options, double limit,
+                         bool curve, entry *new, fw_fault *fault)
+{
+    if (curve)
+        return fw_film_curve_build(shape, options, limit, NULL, &new->curve, fault);
+    return fw_film_solve(shape, options, &new->solution, fault);
+}
+
+static fw_status ask(fw_film_memo *memo, const fw_film_shape *shape, const fw_film_options *options,
+                     double limit, bool curve, entry **out, fw_fault *fault)
+{
+    entry *new = NULL;
+    size_t bytes = key_size(shape);
+    FW_TRY(fw_allocate((void **)&new, 1, sizeof *new + bytes, holder, fault));
+    new->key_bytes = bytes;
+    write_key(shape, options, limit, curve, new->key);
+    new->hash = hash_of(new->key, bytes);
+    *out = look_up(memo, new);
+    if (*out != NULL) {
+        free(new);
+        return FW_OK;
+    }
+    fw_status status = compute(shape, options, limit, curve, new, fault);
+    if (status != FW_OK) {
+        free(new);
+        return status;
+    }
+    new->bytes = sizeof *new + bytes + fw_film_solution_bytes(&new->solution);
+    *out = keep(memo, new);
+    return FW_OK;
+}
+
+fw_status fw_film_memo_solve(fw_film_memo *memo, const fw_film_shape *shape,
+                             const fw_film_options *options, const fw_film_solution **out,
+                             fw_fault *fault)
+{
+    entry *found = NULL;
+    FW_TRY(ask(memo, shape, options, options->obstacle_mm2, false, &found, fault));
+    *out = &found->solution;
+    return FW_OK;
+}
+
+fw_status fw_film_memo_curve(fw_film_memo *memo, const fw_film_shape *shape,
+                             const fw_film_options *options, double cap_MPa,
+                             const fw_film_curve **out, fw_fault *fault)
+{
+    entry *found = NULL;
+    FW_TRY(ask(memo, shape, options, cap_MPa, true, &found, fault));
+    *out = &found->curve;
+    return FW_OK;
+}
