@@ -21,6 +21,9 @@ typedef struct falsework_options {
     /* NULL; or told what is done, from the calling thread */
     void (*progress)(void *context, const char *phase, int32_t done, int32_t total);
     void *progress_context;
+    /* NULL; or told at the end how much wall time each kind of work took */
+    void (*timing)(void *context, const char *work, double seconds);
+    void *timing_context;
     int64_t *decodes; /* NULL; or receives the number of PNG files that were decoded */
 } falsework_options;
 

@@ -179,7 +179,7 @@ static fw_status read_path(const place *at, json_t *object, fw_post *post)
 
 static fw_status read_layers(const place *at, json_t *object, int32_t lift_layers, fw_post *post)
 {
-    int32_t raw;
+    int32_t raw = 0;
     FW_TRY(get_whole(at, object, "tip_layer", 0, MOST_LAYERS, &post->tip_layer));
     FW_TRY(get_whole(at, object, "raw_tip_layer", 0, MOST_LAYERS, &raw));
     if (raw + lift_layers != post->tip_layer)
@@ -187,7 +187,7 @@ static fw_status read_layers(const place *at, json_t *object, int32_t lift_layer
                       "%" PRId32 " and lift_layers %" PRId32 " do not make tip_layer %" PRId32
                       "; correct one of them",
                       raw, lift_layers, post->tip_layer);
-    return get_whole(at, object, "bite_layers", 1, MOST_LAYERS, &post->bite_layers);
+    return get_whole(at, object, "bite_layers", 0, MOST_LAYERS, &post->bite_layers);
 }
 
 static fw_status read_sizes(const place *at, json_t *object, fw_post *post)
@@ -201,7 +201,7 @@ static fw_status read_sizes(const place *at, json_t *object, fw_post *post)
 
 static fw_status check_results(const place *at, json_t *object)
 {
-    int32_t layer;
+    int32_t layer = 0;
     FW_TRY(check_result(at, object, "load_N"));
     FW_TRY(get_whole(at, object, "load_layer", -1, MOST_LAYERS, &layer));
     FW_TRY(check_result(at, object, "contact_mm2"));
@@ -217,7 +217,7 @@ static fw_status check_results(const place *at, json_t *object)
 /* Ids only rise through the file, so that none stands twice; the post's own is its position. */
 static fw_status read_id(const place *at, json_t *object, int32_t *last)
 {
-    int32_t id;
+    int32_t id = 0;
     FW_TRY(get_whole(at, object, "id", 0, INT32_MAX, &id));
     if (id <= *last)
         return refuse(at, "id",

@@ -145,7 +145,7 @@ static fw_status read_two(reader *r, const fw_row *row, const yaml_node_t *node,
 
 static fw_status read_pair(reader *r, const fw_row *row, const yaml_node_t *node)
 {
-    yaml_node_t *pair[2];
+    yaml_node_t *pair[2] = {NULL, NULL};
     FW_TRY(read_two(r, row, node, pair));
     double *out = field(r, row);
     FW_TRY(read_decimal(r, row, pair[0], &out[0]));
@@ -154,11 +154,11 @@ static fw_status read_pair(reader *r, const fw_row *row, const yaml_node_t *node
 
 static fw_status read_wholes(reader *r, const fw_row *row, const yaml_node_t *node)
 {
-    yaml_node_t *pair[2];
+    yaml_node_t *pair[2] = {NULL, NULL};
     FW_TRY(read_two(r, row, node, pair));
     int *out = field(r, row);
     for (int i = 0; i < 2; i++) {
-        int32_t value;
+        int32_t value = 0;
         FW_TRY(read_whole(r, row, pair[i], &value));
         out[i] = (int)value;
     }

@@ -25,6 +25,7 @@ void fw_clearance_close(fw_clearance *clearance)
 {
     for (int32_t i = 0; i < clearance->window && clearance->kept != NULL; i++) {
         fw_runs_free(&clearance->kept[i].part);
+        fw_runs_free(&clearance->kept[i].wide);
         fw_member_runs_free(&clearance->kept[i].shafts);
     }
     free(clearance->kept);
@@ -65,7 +66,7 @@ static fw_status is_close(const fw_clearance *clearance, const fw_clearance_laye
     shaft_rule rule = {clearance, shafts->layer, only};
     fw_runs set = {0}, wide = {0};
     close->count = 0;
-    if (reach < 0 || shafts->shafts.count == 0 || part->part.count == 0)
+    if (reach < 0)
         return FW_OK;
     fw_status status = fw_members_set(&shafts->shafts, is_shaft, &rule, &set, fault);
     if (status == FW_OK && set.count > 0) {
@@ -121,11 +122,28 @@ static fw_status name_posts(const fw_clearance *clearance, const fw_clearance_la
 static fw_status check_pair(const fw_clearance *clearance, const fw_clearance_layer *shafts,
                             const fw_clearance_layer *part, fw_findings *findings, fw_fault *fault)
 {
-    fw_runs close = {0};
-    fw_status status = is_close(clearance, shafts, part, -1, &close, fault);
-    if (status == FW_OK && close.count > 0)
-        status = name_posts(clearance, shafts, part, findings, fault);
-    fw_runs_free(&close);
+    if (shafts->shafts.count == 0 || part->part.count == 0 ||
+        !fw_runs_meet(&shafts->wide, &part->part))
+        return FW_OK;
+    return name_posts(clearance, shafts, part, findings, fault);
+}
+
+/* The shafts and feet of a layer, and all that is too close to them in the plane. */
+static fw_status keep_shafts(const fw_clearance *clearance, const fw_sheet *sheet,
+                             fw_clearance_layer *slot, fw_fault *fault)
+{
+    const fw_setup *setup = clearance->setup;
+    shaft_rule rule = {clearance, sheet->layer, -1};
+    fw_runs set = {0};
+    fw_status status = fw_members_set(&sheet->intended_members, is_shaft, &rule, &set, fault);
+    if (status == FW_OK && set.count > 0) {
+        const double reach = reach_at(clearance, 0);
+        status = fw_members_within(&sheet->intended_members, &set, &slot->shafts, fault);
+        if (status == FW_OK)
+            status = fw_runs_dilate(&set, reach / setup->px_mm, reach / setup->py_mm, &slot->wide,
+                                    fault);
+    }
+    fw_runs_free(&set);
     return status;
 }
 
@@ -135,8 +153,7 @@ static fw_status keep(fw_clearance *clearance, const fw_sheet *sheet, fw_fault *
     slot->layer = sheet->layer;
     fw_members_clear(&slot->shafts);
     if (sheet->intended_members.count > 0)
-        FW_TRY(fw_members_within(&sheet->intended_members, &sheet->slice.intended, &slot->shafts,
-                                 fault));
+        FW_TRY(keep_shafts(clearance, sheet, slot, fault));
     return fw_runs_copy(fw_sheet_part(sheet), &slot->part, fault);
 }
 

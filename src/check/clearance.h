@@ -2,7 +2,8 @@
  *
  * The neck is left out: it grows out of the face that it holds. A shaft pixel and a part pixel are
  * too close when the distance of their centres in the plane and the gap between their layers lie
- * inside the clearance. Cost of a layer: its runs times the layers within the clearance.
+ * inside the clearance. Cost of a layer: its runs times the layers within the clearance; a disc is
+ * widened once a layer, and again only where something comes close.
  */
 #ifndef FW_CHECK_CLEARANCE_H
 #define FW_CHECK_CLEARANCE_H
@@ -12,7 +13,8 @@
 typedef struct fw_clearance_layer {
     int32_t layer; /* -1: none yet */
     fw_runs part;
-    fw_member_runs shafts; /* shafts and feet, 0 x 0 when there are none */
+    fw_member_runs shafts; /* shafts and feet with their posts; empty when there are none */
+    fw_runs wide;          /* all within the clearance of them, in the plane */
 } fw_clearance_layer;
 
 typedef struct fw_clearance {

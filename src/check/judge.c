@@ -16,6 +16,7 @@ struct fw_judge {
     const fw_placer *placer;
     fw_stamp_plan *plan; /* NULL: posts are not looked for in the pixels */
     fw_film_memo *memo;
+    fw_times *times;
     fw_ground ground;
     fw_share share;
     fw_clearance clearance;
@@ -70,6 +71,7 @@ fw_status fw_judge_new(const fw_judge_input *input, fw_judge **out, fw_fault *fa
     judge->posts = input->posts != NULL ? input->posts : &judge->no_posts;
     judge->placer = input->placer;
     judge->memo = input->memo;
+    judge->times = input->times;
     const fw_status status = open_rooms(judge, fault);
     for (size_t i = 0; i < judge->sheet_capacity; i++)
         judge->sheet[i] = (fw_sheet){0};
@@ -242,17 +244,29 @@ static fw_status share_sheets(fw_judge *judge, int32_t count, fw_fault *fault)
     return FW_OK;
 }
 
+static double book_time(fw_judge *judge, fw_work work, double began)
+{
+    fw_times_add(judge->times, work, began);
+    return fw_times_now();
+}
+
 fw_status fw_judge_layers(fw_judge *judge, const fw_greys *const *layers, int32_t count,
                           fw_fault *fault)
 {
     const phase batch = {judge, layers};
+    double began = fw_times_now();
     FW_TRY(make_room(judge, count, fault));
     FW_TRY(run_phase(&batch, build_sheet, count, fault));
+    began = book_time(judge, FW_WORK_SHEETS, began);
     FW_TRY(run_phase(&batch, join_sheet, count, fault));
+    began = book_time(judge, FW_WORK_JOINING, began);
     FW_TRY(ground_sheets(judge, count, fault));
+    began = book_time(judge, FW_WORK_GROUND, began);
     if (judge->setup.loads)
         FW_TRY(peel_sheets(&batch, count, fault));
+    began = book_time(judge, FW_WORK_PEEL, began);
     FW_TRY(share_sheets(judge, count, fault));
+    (void)book_time(judge, FW_WORK_SHARE, began);
     if (judge->memo != NULL)
         fw_film_memo_trim(judge->memo);
     judge->next_layer += count;

@@ -10,6 +10,7 @@
 #include "check/ground.h"
 #include "check/report.h"
 #include "check/share.h"
+#include "fault/times.h"
 
 typedef struct fw_judge fw_judge;
 
@@ -21,6 +22,7 @@ typedef struct fw_judge_input {
     const fw_posts *posts;   /* NULL: none */
     const fw_placer *placer; /* places tips while layers pass (posts may grow then); NULL: judges.
                                 With a placer posts are not looked for in the pixels. */
+    fw_times *times;         /* NULL, or where the time goes is added to it */
     fw_film_memo *memo;      /* needed when both cards are there */
 } fw_judge_input;
 

@@ -8,6 +8,6 @@
     "  --batch N       layers taken at a time (16)\n"                                              \
     "  --memo-mib N    memory for peel solutions that recur (96)\n"                                \
     "  --store-mib N   memory for packed layers; beyond it a nameless file (96)\n"                 \
-    "  --verbose       count what was decoded\n"
+    "  --verbose       on stderr: files decoded, and where the time went\n"
 
 #endif

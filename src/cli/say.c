@@ -81,6 +81,13 @@ static void show_progress(void *context, const char *phase, int32_t done, int32_
     progress_shown = true;
 }
 
+static void show_time(void *unused, const char *work, double time)
+{
+    (void)unused;
+    clear_progress();
+    (void)fprintf(stderr, "time %s %.3f\n", work, time);
+}
+
 falsework_options fw_say_options(const fw_arguments *arguments, int64_t *decodes)
 {
     static progress_clock clock;
@@ -95,6 +102,8 @@ falsework_options fw_say_options(const fw_arguments *arguments, int64_t *decodes
         options.store_MiB = (size_t)arguments->store_MiB;
     options.stop = &stop_signal;
     options.decodes = decodes;
+    if (arguments->verbose)
+        options.timing = show_time;
     if (isatty(STDERR_FILENO)) {
         options.progress = show_progress;
         options.progress_context = &clock;

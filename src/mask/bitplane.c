@@ -5,7 +5,8 @@
 #include <stdlib.h>
 
 fw_status fw_bitplane_new(fw_bitplane *plane, int32_t width, int32_t height, const char *holder,
-                          fw_fault *fault) {
+                          fw_fault *fault)
+{
     const int32_t columns = width / 32 + (width % 32 != 0);
     const size_t stride = (size_t)columns + 2;
     if ((size_t)height > SIZE_MAX / stride)
@@ -16,12 +17,14 @@ fw_status fw_bitplane_new(fw_bitplane *plane, int32_t width, int32_t height, con
     return FW_OK;
 }
 
-void fw_bitplane_free(fw_bitplane *plane) {
+void fw_bitplane_free(fw_bitplane *plane)
+{
     free(plane->word);
     *plane = (fw_bitplane){0};
 }
 
-bool fw_bitplane_full(const fw_bitplane *plane, int32_t y, int32_t x0, int32_t x1) {
+bool fw_bitplane_full(const fw_bitplane *plane, int32_t y, int32_t x0, int32_t x1)
+{
     /* Shifted by one word, so that pixels left of the image divide like all others. */
     const int32_t last = (x1 - 1 + 32) / 32 - 1;
     for (int32_t column = (x0 + 32) / 32 - 1; column <= last; column++) {

@@ -26,17 +26,20 @@ void fw_bitplane_free(fw_bitplane *plane);
 bool fw_bitplane_full(const fw_bitplane *plane, int32_t y, int32_t x0, int32_t x1);
 
 /* Column -1 .. columns of row y. */
-static inline uint32_t *fw_bitplane_word(const fw_bitplane *plane, int32_t y, int32_t column) {
+static inline uint32_t *fw_bitplane_word(const fw_bitplane *plane, int32_t y, int32_t column)
+{
     return plane->word + (size_t)y * plane->stride + (size_t)(column + 1);
 }
 
-static inline bool fw_bitplane_at(const fw_bitplane *plane, int32_t x, int32_t y) {
+static inline bool fw_bitplane_at(const fw_bitplane *plane, int32_t x, int32_t y)
+{
     return (*fw_bitplane_word(plane, y, x >> 5) >> (x & 31) & 1U) != 0;
 }
 
 /* The bits of one word that belong to pixels [x0, x1), where column * 32 is the word's first pixel.
  * At least one must. */
-static inline uint32_t fw_bitplane_mask(int32_t column, int32_t x0, int32_t x1) {
+static inline uint32_t fw_bitplane_mask(int32_t column, int32_t x0, int32_t x1)
+{
     const int32_t first = column * 32;
     const uint32_t from = x0 > first ? UINT32_MAX << (x0 - first) : UINT32_MAX;
     const uint32_t until = x1 < first + 32 ? UINT32_MAX >> (first + 32 - x1) : UINT32_MAX;

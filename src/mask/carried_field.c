@@ -6,7 +6,8 @@
 #include <stdlib.h>
 
 /* Moves the base of a tile to what is paid by now, so that new values fit in 16 bits. */
-static void base_anew(fw_carried *field, fw_tile *tile) {
+static void base_anew(fw_carried *field, fw_tile *tile)
+{
     tile->top = 0;
     for (size_t i = 0; i < FW_TILE_PIXELS; i++) {
         const uint32_t units = fw_tile_value(field, tile, i);
@@ -17,7 +18,8 @@ static void base_anew(fw_carried *field, fw_tile *tile) {
     tile->base = field->paid;
 }
 
-static fw_status tile_for_writing(fw_carried *field, size_t index, fw_tile **out, fw_fault *fault) {
+static fw_status tile_for_writing(fw_carried *field, size_t index, fw_tile **out, fw_fault *fault)
+{
     if (field->tile[index] == NULL) {
         FW_TRY(fw_allocate((void **)&field->tile[index], 1, sizeof *field->tile[index],
                            FW_CARRIED_HOLDER, fault));
@@ -30,7 +32,8 @@ static fw_status tile_for_writing(fw_carried *field, size_t index, fw_tile **out
 }
 
 /* Number of set bits: sums of pairs, of fours, of bytes, and the four bytes by one product. */
-static uint32_t bit_count(uint32_t word) {
+static uint32_t bit_count(uint32_t word)
+{
     word -= word >> 1 & 0x55555555U;
     word = (word & 0x33333333U) + (word >> 2 & 0x33333333U);
     word = (word + (word >> 4)) & 0x0f0f0f0fU;
@@ -38,7 +41,8 @@ static uint32_t bit_count(uint32_t word) {
 }
 
 /* Clears the unknown bits of a mask in one word and returns those that were set. */
-static uint32_t become_known(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static uint32_t become_known(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     uint32_t *word = fw_bitplane_word(&field->unknown, y, column);
     const uint32_t changed = *word & mask;
     *word &= ~mask;
@@ -47,8 +51,8 @@ static uint32_t become_known(fw_carried *field, int32_t y, int32_t column, uint3
     return changed;
 }
 
-fw_status fw_carried_store(fw_carried *field, int32_t x, int32_t y, uint32_t units,
-                           fw_fault *fault) {
+fw_status fw_carried_store(fw_carried *field, int32_t x, int32_t y, uint32_t units, fw_fault *fault)
+{
     assert(units > 0 && units < field->saturation);
     fw_tile *tile = NULL;
     FW_TRY(tile_for_writing(field, fw_tile_index(field, x / FW_TILE, y / FW_TILE), &tile, fault));
@@ -60,7 +64,8 @@ fw_status fw_carried_store(fw_carried *field, int32_t x, int32_t y, uint32_t uni
     return FW_OK;
 }
 
-void fw_carried_pay(fw_carried *field, double credit_units) {
+void fw_carried_pay(fw_carried *field, double credit_units)
+{
     field->credits += credit_units;
     /* The slack keeps a sum of credits that is a whole number of units whole. */
     field->paid = (int64_t)(field->credits + 1e-6);
@@ -74,12 +79,14 @@ void fw_carried_pay(fw_carried *field, double credit_units) {
     }
 }
 
-static void wake(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static void wake(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     *fw_bitplane_word(&field->woken, y, column) |= mask;
     field->tile_woken[fw_tile_index(field, column, y / FW_TILE)] = 1;
 }
 
-static void enter_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static void enter_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     *fw_bitplane_word(&field->medium, y, column) |= mask;
     *fw_bitplane_word(&field->unknown, y, column) |= mask;
     uint16_t *count = &field->unknown_in_tile[fw_tile_index(field, column, y / FW_TILE)];
@@ -88,7 +95,8 @@ static void enter_word(fw_carried *field, int32_t y, int32_t column, uint32_t ma
 }
 
 /* Sets the stored values of a mask to 0 and returns the pixels that were above 0. */
-static uint32_t clear_values(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static uint32_t clear_values(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     fw_tile *tile = field->tile[fw_tile_index(field, column, y / FW_TILE)];
     uint32_t changed = 0;
     for (int32_t bit = 0; tile != NULL && bit < FW_TILE; bit++) {
@@ -101,12 +109,14 @@ static uint32_t clear_values(fw_carried *field, int32_t y, int32_t column, uint3
     return changed;
 }
 
-static void leave_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static void leave_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     *fw_bitplane_word(&field->medium, y, column) &= ~mask;
     become_known(field, y, column, mask);
 }
 
-static void source_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask) {
+static void source_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
+{
     mask &= *fw_bitplane_word(&field->medium, y, column);
     const uint32_t changed =
         become_known(field, y, column, mask) | clear_values(field, y, column, mask);
@@ -116,7 +126,8 @@ static void source_word(fw_carried *field, int32_t y, int32_t column, uint32_t m
 
 typedef void word_action(fw_carried *field, int32_t y, int32_t column, uint32_t mask);
 
-static void for_each_word(fw_carried *field, const fw_runs *set, word_action *act) {
+static void for_each_word(fw_carried *field, const fw_runs *set, word_action *act)
+{
     for (int32_t y = 0; y < set->height; y++) {
         for (uint32_t i = set->row[y]; i < set->row[y + 1]; i++) {
             const fw_run run = set->run[i];
@@ -126,14 +137,17 @@ static void for_each_word(fw_carried *field, const fw_runs *set, word_action *ac
     }
 }
 
-void fw_carried_enter(fw_carried *field, const fw_runs *fresh) {
+void fw_carried_enter(fw_carried *field, const fw_runs *fresh)
+{
     for_each_word(field, fresh, enter_word);
 }
 
-void fw_carried_leave(fw_carried *field, const fw_runs *gone) {
+void fw_carried_leave(fw_carried *field, const fw_runs *gone)
+{
     for_each_word(field, gone, leave_word);
 }
 
-void fw_carried_source(fw_carried *field, const fw_runs *sources) {
+void fw_carried_source(fw_carried *field, const fw_runs *sources)
+{
     for_each_word(field, sources, source_word);
 }

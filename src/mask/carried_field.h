@@ -60,21 +60,25 @@ struct fw_carried {
     fw_pixel_list pending; /* pixels that must look at their neighbours */
 };
 
-static inline size_t fw_tile_index(const fw_carried *field, int32_t column, int32_t row) {
+static inline size_t fw_tile_index(const fw_carried *field, int32_t column, int32_t row)
+{
     return (size_t)row * (size_t)field->tiles_x + (size_t)column;
 }
 
-static inline size_t fw_tile_pixel(int32_t x, int32_t y) {
+static inline size_t fw_tile_pixel(int32_t x, int32_t y)
+{
     return (size_t)(y % FW_TILE * FW_TILE + x % FW_TILE);
 }
 
-static inline uint32_t fw_tile_value(const fw_carried *field, const fw_tile *tile, size_t pixel) {
+static inline uint32_t fw_tile_value(const fw_carried *field, const fw_tile *tile, size_t pixel)
+{
     const int64_t left = tile->base + tile->value[pixel] - field->paid;
     return tile->value[pixel] > 0 && left > 0 ? (uint32_t)left : 0;
 }
 
 /* Value in units of a pixel of the medium. */
-static inline uint32_t fw_carried_units(const fw_carried *field, int32_t x, int32_t y) {
+static inline uint32_t fw_carried_units(const fw_carried *field, int32_t x, int32_t y)
+{
     if (fw_bitplane_at(&field->unknown, x, y))
         return field->saturation;
     const fw_tile *tile = field->tile[fw_tile_index(field, x / FW_TILE, y / FW_TILE)];

@@ -9,7 +9,8 @@
 #include "fault/memory.h"
 #include "mask/carried_field.h"
 
-static fw_status heap_push(fw_heap *heap, uint32_t units, uint32_t index, fw_fault *fault) {
+static fw_status heap_push(fw_heap *heap, uint32_t units, uint32_t index, fw_fault *fault)
+{
     FW_TRY(fw_grow((void **)&heap->key, &heap->capacity, heap->count + 1, sizeof *heap->key,
                    FW_CARRIED_HOLDER, fault));
     const uint64_t key = (uint64_t)units << 32 | index;
@@ -22,7 +23,8 @@ static fw_status heap_push(fw_heap *heap, uint32_t units, uint32_t index, fw_fau
     return FW_OK;
 }
 
-static uint64_t heap_pop(fw_heap *heap) {
+static uint64_t heap_pop(fw_heap *heap)
+{
     const uint64_t top = heap->key[0], last = heap->key[--heap->count];
     size_t at = 0;
     for (size_t child = 1; child < heap->count; child = 2 * at + 1) {
@@ -37,17 +39,20 @@ static uint64_t heap_pop(fw_heap *heap) {
     return top;
 }
 
-static uint32_t raster_index(const fw_carried *field, int32_t x, int32_t y) {
+static uint32_t raster_index(const fw_carried *field, int32_t x, int32_t y)
+{
     return (uint32_t)y * (uint32_t)field->width + (uint32_t)x;
 }
 
-static bool in_medium(const fw_carried *field, int32_t x, int32_t y) {
+static bool in_medium(const fw_carried *field, int32_t x, int32_t y)
+{
     return x >= 0 && x < field->width && y >= 0 && y < field->height &&
            fw_bitplane_at(&field->medium, x, y);
 }
 
 /* Every step from (x, y) is in sight: the usual case, found in a few words. */
-static bool in_the_open(const fw_carried *field, int32_t x, int32_t y) {
+static bool in_the_open(const fw_carried *field, int32_t x, int32_t y)
+{
     const int32_t rx = field->steps.radius_x, ry = field->steps.radius_y;
     if (y < ry || y >= field->height - ry)
         return false;
@@ -58,7 +63,8 @@ static bool in_the_open(const fw_carried *field, int32_t x, int32_t y) {
     return true;
 }
 
-static bool in_sight(const fw_carried *field, const fw_step *step, int32_t x, int32_t y) {
+static bool in_sight(const fw_carried *field, const fw_step *step, int32_t x, int32_t y)
+{
     const fw_offset *crossing = field->steps.crossing;
     for (uint32_t i = step->crossed; i < step->crossed_end; i++) {
         if (!in_medium(field, x + crossing[i].dx, y + crossing[i].dy))
@@ -69,13 +75,15 @@ static bool in_sight(const fw_carried *field, const fw_step *step, int32_t x, in
            in_medium(field, x + side[1].dx, y + side[1].dy);
 }
 
-static fw_status shorten(fw_carried *field, int32_t x, int32_t y, uint32_t units, fw_fault *fault) {
+static fw_status shorten(fw_carried *field, int32_t x, int32_t y, uint32_t units, fw_fault *fault)
+{
     FW_TRY(fw_carried_store(field, x, y, units, fault));
     return heap_push(&field->heap, units, raster_index(field, x, y), fault);
 }
 
 /* Shortens (x, y) by the best that its neighbours offer. */
-static fw_status pull(fw_carried *field, int32_t x, int32_t y, fw_fault *fault) {
+static fw_status pull(fw_carried *field, int32_t x, int32_t y, fw_fault *fault)
+{
     const uint32_t old = fw_carried_units(field, x, y);
     const bool open = in_the_open(field, x, y);
     uint32_t best = old;
@@ -93,7 +101,8 @@ static fw_status pull(fw_carried *field, int32_t x, int32_t y, fw_fault *fault) 
 
 /* Offers the value of (x, y) to its neighbours. */
 static fw_status offer_round(fw_carried *field, int32_t x, int32_t y, uint32_t units,
-                             fw_fault *fault) {
+                             fw_fault *fault)
+{
     const bool open = in_the_open(field, x, y);
     for (size_t i = 0; i < field->steps.count; i++) {
         const fw_step *step = &field->steps.step[i];
@@ -107,7 +116,8 @@ static fw_status offer_round(fw_carried *field, int32_t x, int32_t y, uint32_t u
     return FW_OK;
 }
 
-static fw_status march(fw_carried *field, fw_fault *fault) {
+static fw_status march(fw_carried *field, fw_fault *fault)
+{
     while (field->heap.count > 0) {
         const uint64_t key = heap_pop(&field->heap);
         const uint32_t units = (uint32_t)(key >> 32), index = (uint32_t)key;
@@ -125,7 +135,8 @@ typedef enum look {
     SLEEPER_BY_WOKEN, /* what did not change next to what did */
 } look;
 
-static uint32_t lookers(const fw_carried *field, look who, int32_t y, int32_t column) {
+static uint32_t lookers(const fw_carried *field, look who, int32_t y, int32_t column)
+{
     const uint32_t unknown = *fw_bitplane_word(&field->unknown, y, column);
     if (who == UNKNOWN_BY_KNOWN)
         return unknown;
@@ -133,7 +144,8 @@ static uint32_t lookers(const fw_carried *field, look who, int32_t y, int32_t co
            ~*fw_bitplane_word(&field->woken, y, column);
 }
 
-static uint32_t looked_at(const fw_carried *field, look who, int32_t y, int32_t column) {
+static uint32_t looked_at(const fw_carried *field, look who, int32_t y, int32_t column)
+{
     if (who == UNKNOWN_BY_KNOWN)
         return *fw_bitplane_word(&field->medium, y, column) &
                ~*fw_bitplane_word(&field->unknown, y, column);
@@ -141,7 +153,8 @@ static uint32_t looked_at(const fw_carried *field, look who, int32_t y, int32_t 
 }
 
 /* Bits of the middle word that have a set bit within reach (at most 31) in the three words. */
-static uint32_t widen(const uint32_t word[3], int32_t reach) {
+static uint32_t widen(const uint32_t word[3], int32_t reach)
+{
     uint32_t wide = word[1];
     for (int32_t k = 1; k <= reach; k++) {
         wide |= word[1] << k | word[0] >> (32 - k);
@@ -151,7 +164,8 @@ static uint32_t widen(const uint32_t word[3], int32_t reach) {
 }
 
 /* Pixels of one word of row y that have a looked_at pixel within the steps' box. */
-static uint32_t near(const fw_carried *field, look who, int32_t y, int32_t column) {
+static uint32_t near(const fw_carried *field, look who, int32_t y, int32_t column)
+{
     const int32_t reach = field->steps.radius_y;
     const int32_t first = y - reach > 0 ? y - reach : 0;
     const int32_t last = y + reach < field->height - 1 ? y + reach : field->height - 1;
@@ -164,7 +178,8 @@ static uint32_t near(const fw_carried *field, look who, int32_t y, int32_t colum
 }
 
 static fw_status add_pending(fw_carried *field, int32_t y, int32_t column, uint32_t mask,
-                             fw_fault *fault) {
+                             fw_fault *fault)
+{
     fw_pixel_list *list = &field->pending;
     FW_TRY(fw_grow((void **)&list->index, &list->capacity, list->count + 32, sizeof *list->index,
                    FW_CARRIED_HOLDER, fault));
@@ -177,7 +192,8 @@ static fw_status add_pending(fw_carried *field, int32_t y, int32_t column, uint3
 }
 
 static fw_status gather_tile(fw_carried *field, look who, int32_t column, int32_t tile_row,
-                             fw_fault *fault) {
+                             fw_fault *fault)
+{
     const int32_t first = tile_row * FW_TILE;
     const int32_t end = field->height - first < FW_TILE ? field->height : first + FW_TILE;
     for (int32_t y = first; y < end; y++) {
@@ -191,7 +207,8 @@ static fw_status gather_tile(fw_carried *field, look who, int32_t column, int32_
 }
 
 /* A woken pixel in this tile or one of the eight round it: steps reach no further. */
-static bool woken_near(const fw_carried *field, int32_t column, int32_t row) {
+static bool woken_near(const fw_carried *field, int32_t column, int32_t row)
+{
     for (int32_t r = row - (row > 0); r <= row + 1 && r < field->tiles_y; r++) {
         for (int32_t c = column - (column > 0); c <= column + 1 && c < field->tiles_x; c++) {
             if (field->tile_woken[fw_tile_index(field, c, r)] != 0)
@@ -201,7 +218,8 @@ static bool woken_near(const fw_carried *field, int32_t column, int32_t row) {
     return false;
 }
 
-static fw_status gather(fw_carried *field, bool march_all, fw_fault *fault) {
+static fw_status gather(fw_carried *field, bool march_all, fw_fault *fault)
+{
     field->pending.count = 0;
     for (int32_t row = 0; row < field->tiles_y; row++) {
         for (int32_t column = 0; column < field->tiles_x; column++) {
@@ -218,7 +236,8 @@ static fw_status gather(fw_carried *field, bool march_all, fw_fault *fault) {
     return FW_OK;
 }
 
-static void sleep_again(fw_carried *field) {
+static void sleep_again(fw_carried *field)
+{
     const size_t tiles = (size_t)field->tiles_x * (size_t)field->tiles_y;
     for (size_t i = 0; i < tiles; i++) {
         if (field->tile_woken[i] == 0)
@@ -231,7 +250,8 @@ static void sleep_again(fw_carried *field) {
     }
 }
 
-fw_status fw_carried_settle(fw_carried *field, bool march_all, fw_fault *fault) {
+fw_status fw_carried_settle(fw_carried *field, bool march_all, fw_fault *fault)
+{
     fw_status status = gather(field, march_all, fault);
     sleep_again(field);
     field->heap.count = 0;

@@ -5,22 +5,26 @@
 #include <math.h>
 #include <stdlib.h>
 
-static double in_mm(const fw_carried *field, uint32_t units) {
+static double in_mm(const fw_carried *field, uint32_t units)
+{
     return units >= field->saturation ? field->saturation_mm : units * field->unit_mm;
 }
 
-double fw_carried_at(const fw_carried *field, int32_t x, int32_t y) {
+double fw_carried_at(const fw_carried *field, int32_t x, int32_t y)
+{
     if (x < 0 || x >= field->width || y < 0 || y >= field->height ||
         !fw_bitplane_at(&field->medium, x, y))
         return INFINITY;
     return in_mm(field, fw_carried_units(field, x, y));
 }
 
-double fw_carried_unit(const fw_carried *field) {
+double fw_carried_unit(const fw_carried *field)
+{
     return field->unit_mm;
 }
 
-size_t fw_carried_bytes(const fw_carried *field) {
+size_t fw_carried_bytes(const fw_carried *field)
+{
     const size_t tiles = (size_t)field->tiles_x * (size_t)field->tiles_y;
     size_t bytes = sizeof *field + tiles * (sizeof(fw_tile *) + 3) +
                    3 * field->medium.stride * (size_t)field->height * sizeof(uint32_t);
@@ -46,7 +50,8 @@ typedef struct walk {
     void *context;
 } walk;
 
-static void find_active(walk *w, int32_t tile_row) {
+static void find_active(walk *w, int32_t tile_row)
+{
     const fw_carried *field = w->field;
     w->next_active[field->tiles_x] = field->tiles_x;
     for (int32_t column = field->tiles_x - 1; column >= 0; column--) {
@@ -56,13 +61,15 @@ static void find_active(walk *w, int32_t tile_row) {
     }
 }
 
-static fw_status close_stretch(walk *w, uint32_t run, int32_t y, fw_fault *fault) {
+static fw_status close_stretch(walk *w, uint32_t run, int32_t y, fw_fault *fault)
+{
     const int32_t x0 = w->x0, x1 = w->x1;
     w->x0 = w->x1 = 0;
     return x0 < x1 ? w->visit(w->context, run, y, x0, x1, w->value_mm, fault) : FW_OK;
 }
 
-static fw_status walk_pixel(walk *w, uint32_t run, int32_t y, int32_t x, fw_fault *fault) {
+static fw_status walk_pixel(walk *w, uint32_t run, int32_t y, int32_t x, fw_fault *fault)
+{
     const uint32_t units = fw_carried_units(w->field, x, y);
     if (units <= w->limit && units < w->field->saturation)
         return FW_OK;
@@ -75,7 +82,8 @@ static fw_status walk_pixel(walk *w, uint32_t run, int32_t y, int32_t x, fw_faul
     return FW_OK;
 }
 
-static fw_status walk_run(walk *w, uint32_t run, int32_t y, fw_fault *fault) {
+static fw_status walk_run(walk *w, uint32_t run, int32_t y, fw_fault *fault)
+{
     const fw_run r = w->field->now->run[run];
     for (int32_t column = w->next_active[r.x0 / FW_TILE]; column * FW_TILE < r.x1;
          column = w->next_active[column + 1]) {
@@ -87,7 +95,8 @@ static fw_status walk_run(walk *w, uint32_t run, int32_t y, fw_fault *fault) {
     return close_stretch(w, run, y, fault);
 }
 
-static fw_status walk_rows(walk *w, fw_fault *fault) {
+static fw_status walk_rows(walk *w, fw_fault *fault)
+{
     const fw_carried *field = w->field;
     const fw_runs *now = field->now;
     for (int32_t y = 0; y < field->height; y++) {
@@ -104,7 +113,8 @@ static fw_status walk_rows(walk *w, fw_fault *fault) {
 }
 
 static fw_status walk_over(const fw_carried *field, double limit_mm, run_visitor *visit,
-                           void *context, fw_fault *fault) {
+                           void *context, fw_fault *fault)
+{
     if (!(limit_mm >= 0))
         return fw_fault_set(fault, FW_INPUT, "a reach of %g mm makes no sense, use 0 or more",
                             limit_mm);
@@ -131,7 +141,8 @@ typedef struct peaks {
 } peaks;
 
 static fw_status add_to_peak(void *context, uint32_t run, int32_t y, int32_t x0, int32_t x1,
-                             const double *value_mm, fw_fault *fault) {
+                             const double *value_mm, fw_fault *fault)
+{
     (void)fault;
     peaks *p = context;
     fw_carried_peak *peak = &p->peak[p->regions->label[run]];
@@ -147,7 +158,8 @@ static fw_status add_to_peak(void *context, uint32_t run, int32_t y, int32_t x0,
 }
 
 fw_status fw_carried_over(const fw_carried *field, double limit_mm, fw_carried_peak *per_region,
-                          fw_fault *fault) {
+                          fw_fault *fault)
+{
     for (uint32_t r = 0; field->now != NULL && r < field->regions->count; r++)
         per_region[r] = (fw_carried_peak){0};
     peaks p = {field->regions, per_region};
@@ -160,14 +172,16 @@ typedef struct caller {
 } caller;
 
 static fw_status pass_on(void *context, uint32_t run, int32_t y, int32_t x0, int32_t x1,
-                         const double *value_mm, fw_fault *fault) {
+                         const double *value_mm, fw_fault *fault)
+{
     (void)run;
     const caller *c = context;
     return c->visit(c->context, y, x0, x1, value_mm, fault);
 }
 
 fw_status fw_carried_visit(const fw_carried *field, double limit_mm, fw_carried_visitor *visit,
-                           void *context, fw_fault *fault) {
+                           void *context, fw_fault *fault)
+{
     caller c = {visit, context};
     return walk_over(field, limit_mm, pass_on, &c, fault);
 }

@@ -214,6 +214,30 @@ fw_status fw_runs_copy(const fw_runs *a, fw_runs *out, fw_fault *fault)
     return FW_OK;
 }
 
+static bool rows_meet(const fw_runs *a, const fw_runs *b, int32_t y)
+{
+    uint32_t i = a->row[y], j = b->row[y];
+    while (i < a->row[y + 1] && j < b->row[y + 1]) {
+        if (a->run[i].x1 <= b->run[j].x0)
+            i++;
+        else if (b->run[j].x1 <= a->run[i].x0)
+            j++;
+        else
+            return true;
+    }
+    return false;
+}
+
+bool fw_runs_meet(const fw_runs *a, const fw_runs *b)
+{
+    assert(a->width == b->width && a->height == b->height);
+    for (int32_t y = 0; y < a->height; y++) {
+        if (rows_meet(a, b, y))
+            return true;
+    }
+    return false;
+}
+
 /* Half width of the ellipse at dy rows from its centre, in whole pixels; -1 outside. A reach that
  * misses a whole pixel by rounding alone (0.3 mm / 0.05 mm) counts as that pixel on both axes. */
 static int32_t ellipse_half_width(double reach_x, double reach_y, int32_t dy)

@@ -49,6 +49,9 @@ fw_status fw_runs_subtract(const fw_runs *a, const fw_runs *b, fw_runs *out, fw_
 fw_status fw_runs_unite(const fw_runs *a, const fw_runs *b, fw_runs *out, fw_fault *fault);
 fw_status fw_runs_copy(const fw_runs *a, fw_runs *out, fw_fault *fault);
 
+/* Do the two sets share a pixel? Ends at the first. */
+bool fw_runs_meet(const fw_runs *a, const fw_runs *b);
+
 /* out = all pixels of a whose centre lies within reach of some pixel centre of a, an ellipse of
  * reach_x by reach_y px (fractions allowed): for clearance. */
 fw_status fw_runs_dilate(const fw_runs *a, double reach_x, double reach_y, fw_runs *out,

@@ -45,6 +45,11 @@ void fw_api_pass_done(const falsework_options *options, fw_pass *pass)
 {
     if (options != NULL && options->decodes != NULL)
         *options->decodes = pass->decodes;
+    for (int work = 0; work < FW_WORK_COUNT && pass->times != NULL; work++) {
+        if (options != NULL && options->timing != NULL)
+            options->timing(options->timing_context, fw_work_name((fw_work)work),
+                            pass->times->seconds[work]);
+    }
     fw_pass_close(pass);
 }
 

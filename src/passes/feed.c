@@ -57,9 +57,13 @@ static fw_status read_all(fw_pass *pass, fw_reader *reader, double intent_level,
     int32_t done = 0, count = 0;
     do {
         fw_layer *batch = NULL;
+        double began = fw_times_now();
         FW_TRY(fw_reader_next(reader, &batch, &count, fault));
+        fw_times_add(pass->times, FW_WORK_READING, began);
+        began = fw_times_now();
         for (int32_t i = 0; i < count; i++)
             FW_TRY(take_layer(raw, &batch[i], intent_level, fault));
+        fw_times_add(pass->times, FW_WORK_PACKING, began);
         done += count;
         FW_TRY(fw_pass_tick(pass, "reading", done, raw->layers, fault));
     } while (count > 0);
@@ -176,7 +180,9 @@ static fw_status feed_all(const fw_pass *pass, const fw_raw *raw, int32_t lift,
     for (int32_t first = 0; first < layers; first += batch->size) {
         const int32_t left = layers - first;
         const int32_t count = left < batch->size ? left : batch->size;
+        const double began = fw_times_now();
         FW_TRY(fw_raw_layers(raw, lift, plan, first, count, batch->greys, NULL, fault));
+        fw_times_add(pass->times, FW_WORK_STAMPING, began);
         FW_TRY(fw_judge_layers(judge, batch->order, count, fault));
         FW_TRY(fw_pass_tick(pass, phase, first + count, layers, fault));
     }

@@ -23,7 +23,8 @@ typedef struct fitting {
     fw_posts missed;  /* places that no path leads to, of the newest placing pass */
     unsigned *failed; /* [count of placed posts] what the newest sizing could not meet */
     size_t failed_capacity;
-    size_t placed; /* fit->posts.item[0 .. placed) are posts, the rest is `missed` */
+    fw_judge *judge; /* of the newest judging round, NULL before it */
+    size_t placed;   /* fit->posts.item[0 .. placed) are posts, the rest is `missed` */
 } fitting;
 
 static fw_status set_up(fitting *now, fw_fault *fault)
@@ -85,6 +86,7 @@ static fw_status build_lattice(fitting *now, fw_fault *fault)
         .clearance_mm = clearance,
         .clearance_above_mm = fmax(clearance, grows + 2 * now->setup.t_mm),
         .need_mm = fmax(job->rules.shaft_mm[1], job->rules.foot_mm) / 2 + clearance};
+    const double began = fw_times_now();
     fw_greys greys = {0};
     fw_runs part = {0};
     fw_status status = fw_lattice_new(&shape, NULL, &now->lattice, fault);
@@ -94,7 +96,9 @@ static fw_status build_lattice(fitting *now, fw_fault *fault)
     fw_runs_free(&part);
     FW_TRY(status);
     FW_TRY(fw_lattice_finish(now->lattice, fault));
-    return fw_route_prepare(now->lattice, &now->route, fault);
+    FW_TRY(fw_route_prepare(now->lattice, &now->route, fault));
+    fw_times_add(now->pass->times, FW_WORK_LATTICE, began);
+    return FW_OK;
 }
 
 /* ---- one round ----------------------------------------------------------------------------------
@@ -111,6 +115,7 @@ static fw_status new_judge(const fitting *now, const fw_placer *placer, fw_judge
                                   .full = now->raw->full,
                                   .posts = &now->fit->posts,
                                   .placer = placer,
+                                  .times = now->pass->times,
                                   .memo = now->pass->memo};
     return fw_judge_new(&input, out, fault);
 }
@@ -142,9 +147,15 @@ static fw_status size_posts(fitting *now, const fw_judge *judge, bool grow_only,
     return fw_sizes_set(sizing, fault);
 }
 
+/* Tips that the last round adds could not be routed any more. */
+static bool may_add(const fitting *now)
+{
+    return now->fit->rounds < FW_FIT_ROUNDS - 1;
+}
+
 /* Follows the raw stack, places what is missing, sizes everything, and adds tips where one alone is
  * not enough. *more tells that it did, so that loads must be shared anew. */
-static fw_status place_round(fitting *now, bool grow_only, bool *more, fw_fault *fault)
+static fw_status place_round(fitting *now, bool *more, fw_fault *fault)
 {
     fw_tipping tipping = tipping_of(now);
     const fw_placer placer = {fw_tips_place, &tipping};
@@ -157,8 +168,8 @@ static fw_status place_round(fitting *now, bool grow_only, bool *more, fw_fault 
         fw_feed_judge(now->pass, now->raw, now->fit->lift, NULL, "placing", judge, fault);
     now->placed = now->fit->posts.count;
     if (status == FW_OK)
-        status = size_posts(now, judge, grow_only, &sizing, fault);
-    if (status == FW_OK)
+        status = size_posts(now, judge, now->fit->rounds > 0, &sizing, fault);
+    if (status == FW_OK && may_add(now))
         status = fw_extras_add(now->raw, now->fit->lift, &sizing, &tipping, &added, fault);
     fw_judge_free(judge);
     fw_posts_order(&now->fit->posts);
@@ -169,6 +180,7 @@ static fw_status place_round(fitting *now, bool grow_only, bool *more, fw_fault 
 
 static fw_status route_all(fitting *now, fw_fault *fault)
 {
+    const double began = fw_times_now();
     for (size_t i = 0; i < now->placed; i++)
         fw_lattice_drop_post(now->lattice, now->fit->posts.item[i].id);
     for (size_t i = 0; i < now->placed; i++) {
@@ -178,6 +190,7 @@ static fw_status route_all(fitting *now, fw_fault *fault)
             FW_TRY(fw_lattice_add_post(now->lattice, post, fault));
         FW_TRY(fw_pass_tick(now->pass, "routing", (int32_t)i + 1, (int32_t)now->placed, fault));
     }
+    fw_times_add(now->pass->times, FW_WORK_ROUTING, began);
     return FW_OK;
 }
 
@@ -219,23 +232,22 @@ static void forget_healed(fitting *now, const fw_judge *judge)
 /* Draws the posts in, judges, and lets them grow to what they carry now. */
 static fw_status judge_round(fitting *now, bool *changed, bool *more, fw_fault *fault)
 {
-    fw_judge *judge = NULL;
     fw_sizing sizing = {0};
     size_t added = 0;
-    FW_TRY(new_judge(now, NULL, &judge, fault));
-    fw_status status = feed_with_posts(now, judge, fault);
-    if (status == FW_OK)
-        status = size_posts(now, judge, true, &sizing, fault);
-    if (status == FW_OK) {
-        now->fit->posts.count = now->placed; /* the missed ones come back after the rounds */
-        forget_healed(now, judge);
+    fw_judge_free(now->judge);
+    now->judge = NULL;
+    FW_TRY(new_judge(now, NULL, &now->judge, fault));
+    FW_TRY(feed_with_posts(now, now->judge, fault));
+    FW_TRY(size_posts(now, now->judge, true, &sizing, fault));
+    now->fit->posts.count = now->placed; /* the missed ones come back after the rounds */
+    forget_healed(now, now->judge);
+    if (may_add(now)) {
         fw_tipping tipping = tipping_of(now);
-        status = fw_extras_add(now->raw, now->fit->lift, &sizing, &tipping, &added, fault);
+        FW_TRY(fw_extras_add(now->raw, now->fit->lift, &sizing, &tipping, &added, fault));
     }
-    fw_judge_free(judge);
     *changed = sizing.changed;
     *more = added > 0;
-    return status;
+    return FW_OK;
 }
 
 static fw_status settle(fitting *now, fw_fault *fault)
@@ -245,7 +257,7 @@ static fw_status settle(fitting *now, fw_fault *fault)
     for (fit->rounds = 0; fit->rounds < FW_FIT_ROUNDS && !fit->settled; fit->rounds++) {
         if (place) {
             fit->posts.count = now->placed;
-            FW_TRY(place_round(now, fit->rounds > 0, &place, fault));
+            FW_TRY(place_round(now, &place, fault));
             if (place)
                 continue;
         }
@@ -263,6 +275,21 @@ static fw_status settle(fitting *now, fw_fault *fault)
     return append_missed(now, fault);
 }
 
+/* The report of what was judged last; where posts have changed since, they are judged once more. */
+static fw_status conclude(fitting *now, fw_fault *fault)
+{
+    fw_fit *fit = now->fit;
+    if (!fit->settled) {
+        const fw_finding unsettled = fw_fit_unsettled(fit);
+        fw_judge_free(now->judge);
+        now->judge = NULL;
+        FW_TRY(new_judge(now, NULL, &now->judge, fault));
+        FW_TRY(feed_with_posts(now, now->judge, fault));
+        FW_TRY(fw_judge_note(now->judge, &unsettled, fault));
+    }
+    return fw_judge_finish(now->judge, &fit->believed, fault);
+}
+
 fw_status fw_fit_posts(const fw_pass *pass, const fw_raw *raw, const fw_job *job, fw_fit *out,
                        fw_fault *fault)
 {
@@ -273,7 +300,10 @@ fw_status fw_fit_posts(const fw_pass *pass, const fw_raw *raw, const fw_job *job
         status = build_lattice(&now, fault);
     if (status == FW_OK)
         status = settle(&now, fault);
+    if (status == FW_OK)
+        status = conclude(&now, fault);
     fw_lattice_free(now.lattice);
+    fw_judge_free(now.judge);
     free(now.missed.item);
     free(now.failed);
     return status;
@@ -282,6 +312,7 @@ fw_status fw_fit_posts(const fw_pass *pass, const fw_raw *raw, const fw_job *job
 void fw_fit_close(fw_fit *fit)
 {
     free(fit->posts.item);
+    fw_report_free(&fit->believed);
     *fit = (fw_fit){0};
 }
 
@@ -291,23 +322,4 @@ fw_finding fw_fit_unsettled(const fw_fit *fit)
     (void)snprintf(finding.message, sizeof finding.message,
                    "loads and sizes did not agree within %d rounds", fit->rounds);
     return finding;
-}
-
-fw_status fw_fit_judge(const fw_pass *pass, const fw_raw *raw, const fw_job *job, const fw_fit *fit,
-                       fw_report *out, fw_fault *fault)
-{
-    fw_fit same = *fit;
-    fitting now = {.pass = pass, .raw = raw, .job = job, .fit = &same};
-    fw_judge *judge = NULL;
-    *out = (fw_report){0};
-    FW_TRY(set_up(&now, fault));
-    FW_TRY(new_judge(&now, NULL, &judge, fault));
-    fw_status status = feed_with_posts(&now, judge, fault);
-    const fw_finding unsettled = fw_fit_unsettled(fit);
-    if (status == FW_OK && !fit->settled)
-        status = fw_judge_note(judge, &unsettled, fault);
-    if (status == FW_OK)
-        status = fw_judge_finish(judge, out, fault);
-    fw_judge_free(judge);
-    return status;
 }

@@ -13,16 +13,15 @@ typedef struct fw_fit {
     int32_t lift;     /* layers prepended */
     int32_t rounds;   /* that it took */
     bool settled;     /* loads and sizes agree */
+    fw_report
+        believed; /* of the stack with the posts drawn in, judged in memory, without digests */
 } fw_fit;
 
-/* Finds the posts that the raw stack needs. Close with fw_fit_close, also after a failure. */
+/* Finds the posts that the raw stack needs, and judges them. Close with fw_fit_close, also after a
+ * failure. */
 fw_status fw_fit_posts(const fw_pass *pass, const fw_raw *raw, const fw_job *job, fw_fit *out,
                        fw_fault *fault);
 void fw_fit_close(fw_fit *fit);
-
-/* Judges the stack with the fit's posts drawn in, in memory. */
-fw_status fw_fit_judge(const fw_pass *pass, const fw_raw *raw, const fw_job *job, const fw_fit *fit,
-                       fw_report *out, fw_fault *fault);
 
 /* The finding of a fit that did not settle; only where !fit->settled. */
 fw_finding fw_fit_unsettled(const fw_fit *fit);

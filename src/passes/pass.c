@@ -1,6 +1,7 @@
 #include "passes/pass.h"
 
 #include <omp.h>
+#include <stdlib.h>
 
 /* The table of budgets stands in DEVELOPERS.md; their sum stays under 512 MiB. */
 enum { MIB = 1024 * 1024, FILES_MIB = 64, RUNS_MIB = 128, MEMO_MIB = 96, STORE_MIB = 96 };
@@ -20,6 +21,7 @@ fw_status fw_pass_open(const fw_pass_options *options, fw_pass *out, fw_fault *f
     if (out->options.batch <= 0)
         out->options.batch = FW_BATCH;
     omp_set_num_threads(options->threads > 0 ? options->threads : omp_get_num_procs());
+    FW_TRY(fw_allocate((void **)&out->times, 1, sizeof *out->times, "pass", fault));
     return fw_film_memo_create(&out->memo_budget, &out->memo, fault);
 }
 
@@ -27,6 +29,7 @@ void fw_pass_close(fw_pass *pass)
 {
     if (pass->memo != NULL)
         fw_film_memo_free(pass->memo);
+    free(pass->times);
     *pass = (fw_pass){0};
 }
 

@@ -22,6 +22,7 @@ typedef struct fw_pass {
     fw_pass_options options;
     fw_budget files, runs, memo_budget, store_budget;
     fw_film_memo *memo;
+    fw_times *times; /* owned; where the time goes */
     int64_t decodes; /* PNG files decoded so far, in all passes */
 } fw_pass;
 

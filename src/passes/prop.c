@@ -76,14 +76,11 @@ static fw_status write_reports(const fw_writing *writing, const fw_report *repor
 
 static fw_status write_and_judge(fw_writing *writing, fw_report *out, fw_fault *fault)
 {
-    fw_report believed = {0};
     FW_TRY(fw_output_folder(writing->output, layers_folder, fault));
     FW_TRY(fw_write_stack(writing, fault));
-    FW_TRY(fw_fit_judge(writing->pass, writing->raw, writing->job, writing->fit, &believed, fault));
     fw_status status = fw_read_back(writing, out, fault);
     if (status == FW_OK)
-        status = compare(&believed, out, fault);
-    fw_report_free(&believed);
+        status = compare(&writing->fit->believed, out, fault);
     if (status == FW_OK)
         status = set_digests(writing, out, fault);
     return status;

@@ -22,6 +22,7 @@ static fw_status open_judge(reading *now, const fw_layer *first, fw_fault *fault
                                   .lift = now->stream->lift,
                                   .full = first->greys.full,
                                   .posts = now->stream->posts,
+                                  .times = now->pass->times,
                                   .memo = now->pass->memo};
     now->full = first->greys.full;
     return fw_judge_new(&input, &now->judge, fault);
@@ -54,7 +55,9 @@ static fw_status read_all(reading *now, fw_report *out, fw_fault *fault)
     int32_t count = 0;
     do {
         fw_layer *batch = NULL;
+        const double began = fw_times_now();
         FW_TRY(fw_reader_next(now->reader, &batch, &count, fault));
+        fw_times_add(now->pass->times, FW_WORK_READING, began);
         if (count > 0)
             FW_TRY(take_batch(now, batch, count, fault));
     } while (count > 0);

@@ -74,11 +74,18 @@ static fw_status put_layer(const fw_writing *writing, int32_t layer, bool touche
 static fw_status write_batch(const fw_writing *writing, int32_t first, int32_t count,
                              const fw_batch *batch, fw_bytes *files, fw_fault *fault)
 {
+    fw_times *times = writing->pass->times;
+    double began = fw_times_now();
     FW_TRY(fw_raw_layers(writing->raw, writing->fit->lift, writing->plan, first, count,
                          batch->greys, batch->touched, fault));
+    fw_times_add(times, FW_WORK_STAMPING, began);
+    began = fw_times_now();
     FW_TRY(encode_batch(writing, first, count, batch, files, fault));
+    fw_times_add(times, FW_WORK_ENCODING, began);
+    began = fw_times_now();
     for (int32_t i = 0; i < count; i++)
         FW_TRY(put_layer(writing, first + i, batch->touched[i], &files[i], fault));
+    fw_times_add(times, FW_WORK_WRITING, began);
     return fw_pass_tick(writing->pass, "writing", first + count, layer_count(writing), fault);
 }
 
@@ -175,7 +182,9 @@ static fw_status judge_back(const reading_back *now, fw_judge *judge, fw_batch *
     const int32_t layers = layer_count(now->writing);
     for (int32_t first = 0; first < layers; first += batch->size) {
         const int32_t count = layers - first < batch->size ? layers - first : batch->size;
+        const double began = fw_times_now();
         FW_TRY(read_batch(now, first, count, batch, fault));
+        fw_times_add(now->writing->pass->times, FW_WORK_READING, began);
         order_batch(now, first, count, batch);
         FW_TRY(fw_judge_layers(judge, batch->order, count, fault));
         FW_TRY(fw_pass_tick(now->writing->pass, "reading back", first + count, layers, fault));
@@ -207,6 +216,7 @@ fw_status fw_read_back(const fw_writing *writing, fw_report *out, fw_fault *faul
                                   .lift = writing->fit->lift,
                                   .full = raw->full,
                                   .posts = &writing->fit->posts,
+                                  .times = writing->pass->times,
                                   .memo = writing->pass->memo};
     reading_back now = {.writing = writing};
     fw_judge *judge = NULL;

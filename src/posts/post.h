@@ -26,7 +26,7 @@ typedef struct fw_post {
     bool locked;
     bool routed;         /* path is complete to the plate */
     int32_t tip_layer;   /* first layer that holds the part over the tip */
-    int32_t bite_layers; /* layers from tip_layer on into which the tip is stamped, >= 1 */
+    int32_t bite_layers; /* layers from tip_layer on into which the tip is stamped, >= 0 */
     int32_t point_count; /* 2 .. FW_POST_POINTS when routed */
     fw_point path[FW_POST_POINTS]; /* [point_count], from tip (z = z_face) to foot (z = 0) */
     double tip_mm, neck_mm /* length */, shaft_mm, foot_mm;

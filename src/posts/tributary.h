@@ -1,7 +1,7 @@
-/* Which anchor carries each place of the newest layer: the one with the shortest way to the plate, by
- * a path through the body that runs within layers and from layer to layer, and on through the anchor
- * itself. (Without the anchor's own length, a tip high up on a tall part would draw the load of all
- * that stands straight on the plate beside it.)
+/* Which anchor carries each place of the newest layer: the one with the shortest way to the plate,
+ * by a path through the body that runs within layers and from layer to layer, and on through the
+ * anchor itself. (Without the anchor's own length, a tip high up on a tall part would draw the load
+ * of all that stands straight on the plate beside it.)
  *
  * The plane is cut into square-ish cells of kx by ky pixels (a side of about 0.4 mm, at least one
  * pixel). A node is (region of the solid, cell in which it has pixels), so that neighbouring

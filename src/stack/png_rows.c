@@ -1,5 +1,7 @@
 #include "stack/png_rows.h"
 
+#include "fault/memory.h"
+#include "stack/grey_rows.h"
 #include "stack/png_chunks.h"
 
 #include <string.h>
@@ -125,6 +127,19 @@ static fw_status refuse_index(const fw_png_rows *rows, int32_t index, int32_t x,
     return refuse_colour(rows, x, y, entry[0], entry[1], entry[2], fault);
 }
 
+/* Appends to a row that has room for it (fw_png_rows_push made that), merging with an equal run
+ * before it as fw_greys_push does: called for every run of every mask, so without its checks. */
+static void append(fw_greys *layer, int32_t y, int32_t x0, int32_t x1, int32_t grey)
+{
+    fw_grey_run *next = layer->run + layer->count;
+    if (layer->count > layer->row[y] && next[-1].x1 == x0 && next[-1].grey == grey) {
+        next[-1].x1 = x1;
+        return;
+    }
+    *next = (fw_grey_run){x0, x1, grey};
+    layer->count++;
+}
+
 static fw_status push_single(const fw_png_rows *rows, const uint8_t *raw, int32_t y,
                              fw_greys *layer, fw_fault *fault)
 {
@@ -137,7 +152,7 @@ static fw_status push_single(const fw_png_rows *rows, const uint8_t *raw, int32_
             grey = rows->grey_of[grey];
         }
         if (grey != 0)
-            FW_TRY(fw_greys_push(layer, y, x, end, grey, fault));
+            append(layer, y, x, end, grey);
         x = end;
     }
     return FW_OK;
@@ -153,7 +168,8 @@ static fw_status push_rgb(const fw_png_rows *rows, const uint8_t *raw, int32_t y
         if (end <= x)
             return refuse_colour(rows, x, y, red, sample_at(raw, 3 * x + 1, rows->depth),
                                  sample_at(raw, 3 * x + 2, rows->depth), fault);
-        FW_TRY(fw_greys_push(layer, y, x, end, red, fault));
+        if (red != 0)
+            append(layer, y, x, end, red);
         x = end;
     }
     return FW_OK;
@@ -162,6 +178,10 @@ static fw_status push_rgb(const fw_png_rows *rows, const uint8_t *raw, int32_t y
 fw_status fw_png_rows_push(const fw_png_rows *rows, const uint8_t *raw, int32_t y, fw_greys *layer,
                            fw_fault *fault)
 {
+    fw_greys_close_before(layer, y);
+    FW_TRY(fw_grow((void **)&layer->run, &layer->run_capacity,
+                   (size_t)layer->count + (size_t)rows->width, sizeof *layer->run,
+                   "greys of a layer", fault));
     return rows->channels == 3 ? push_rgb(rows, raw, y, layer, fault)
                                : push_single(rows, raw, y, layer, fault);
 }

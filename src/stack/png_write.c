@@ -8,7 +8,6 @@
 #include <setjmp.h>
 #include <stdlib.h>
 #include <string.h>
-#include <zlib.h>
 
 enum { MESSAGE = 128, NO_ENTRY = -1 };
 
@@ -154,8 +153,10 @@ static void write_kept(encoder *e, int place)
     }
 }
 
-/* Deflate's run-length strategy at level 1 on rows filtered against the row above: rows that
- * repeat become runs of zeros. */
+/* No filter and deflate's level 1: of the settings measured on masks (filters none, up, sub, all by
+ * strategies default, filtered, run-length at levels 1 and 6) the least time to write and to read
+ * back. The run-length strategy gives files of a third to a half, but takes two to four times as
+ * long to read. */
 static void set_form(encoder *e)
 {
     png_set_write_fn(e->png, e, on_write, on_flush);
@@ -170,9 +171,8 @@ static void set_form(encoder *e)
         }
         png_set_PLTE(e->png, e->info, palette, e->format->palette_count);
     }
-    png_set_filter(e->png, PNG_FILTER_TYPE_BASE, PNG_FILTER_UP);
+    png_set_filter(e->png, PNG_FILTER_TYPE_BASE, PNG_FILTER_NONE);
     png_set_compression_level(e->png, 1);
-    png_set_compression_strategy(e->png, Z_RLE);
 }
 
 static fw_status reason(const encoder *e)

@@ -120,7 +120,7 @@ static void refuses_bad_files(void **state)
         {"\"locked\": true, ", "", ": posts[0].locked: missing; add it"},
         {"\"tip_layer\": 120", "\"tip_layer\": 121",
          ": posts[0].raw_tip_layer: 20 and lift_layers 100 do not make tip_layer 121"},
-        {"\"bite_layers\": 2", "\"bite_layers\": 0", ": posts[0].bite_layers: 0 is out of range"},
+        {"\"bite_layers\": 2", "\"bite_layers\": -1", ": posts[0].bite_layers: -1 is out of range"},
         {"[10.5, 21, 4]", "[10.5, 21]", ": posts[0].path_mm[1]: a point is three numbers"},
         {"[10.5, 21, 4]", "[10.5, \"21\", 4]", ": posts[0].path_mm[1]: is no number"},
         {"[10.5, 21, 4]", "[10.5, 1e9, 4]", ": posts[0].path_mm[1]: 1e+09 is out of range"},

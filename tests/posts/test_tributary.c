@@ -61,7 +61,7 @@ static void advance(scene *s, const uint8_t *map, double thickness_mm, bool add)
     const int now = s->count % 2, before = 1 - now;
     for (int k = 0; k < ANCHORS; k++) {
         runs_of(map, (uint8_t)(ANCHOR + k), s, &contact[k]);
-        anchors[k] = (fw_anchor_contact){k, &contact[k]};
+        anchors[k] = (fw_anchor_contact){k, &contact[k], 0};
     }
     runs_of(map, 0, s, &s->layer[now]);
     assert_int_equal(fw_regions_label(&s->layer[now], FW_FOUR, &s->regions[now], NULL), FW_OK);
@@ -469,7 +469,7 @@ static void bad_input_is_refused(void **state)
     fw_runs_finish(&other);
     const fw_runs *now = &s.layer[0];
     const fw_regions *regions = &s.regions[0], none = {0};
-    const fw_anchor_contact negative = {-1, now}, large = {1, &other};
+    const fw_anchor_contact negative = {-1, now, 0}, large = {1, &other, 0};
     assert_int_equal(fw_tributary_step(s.field, &other, regions, NULL, NULL, 1, NULL, 0, &fault),
                      FW_INPUT);
     assert_int_equal(fw_tributary_step(s.field, now, regions, NULL, NULL, 0, NULL, 0, &fault),

@@ -153,6 +153,7 @@ static void print_layer(const grid *g, int layer, double reach, double sure) {
     }
     printf("%d %ld %ld %ld %.4f %d %d\n", layer, over, surely, adrift, fmaxf(largest, 0),
            worst % g->width, worst / g->width);
+    fflush(stdout); /* the reader answers line by line */
 }
 
 int main(int argc, char **argv) {

@@ -44,8 +44,7 @@ static void test_stack_digest_is_of_lines(void **state)
     fw_sha256_hex(layer[1], second);
     snprintf(text, sizeof text, "%s 0\n%s 1\n", first, second);
     assert_int_equal(fw_sha256(text, strlen(text), expected, NULL), FW_OK);
-    assert_int_equal(fw_sha256_of_stack((const uint8_t(*)[FW_SHA256])layer, 2, stack, NULL),
-                     FW_OK);
+    assert_int_equal(fw_sha256_of_stack((const uint8_t(*)[FW_SHA256])layer, 2, stack, NULL), FW_OK);
     assert_memory_equal(stack, expected, FW_SHA256);
 }
 

@@ -19,9 +19,7 @@ static uint16_t *random_samples(int32_t width, int32_t height, int channels, uin
         }
         for (int32_t x = 0; x < width;) {
             const uint32_t pick = shop_random(4);
-            const uint32_t value = pick == 0   ? 0
-                                   : pick == 1 ? values - 1
-                                               : shop_random(values);
+            const uint32_t value = pick == 0 ? 0 : pick == 1 ? values - 1 : shop_random(values);
             int32_t end = x + 1 + (int32_t)shop_random(pick < 2 ? 60 : 3);
             for (; x < end && x < width; x++) {
                 for (int c = 0; c < channels; c++)
@@ -54,8 +52,7 @@ static void assert_pixels(const fw_greys *layer, const shop_picture *p)
 
 static void check_form(int colour_type, int depth, int32_t width, int32_t height)
 {
-    shop_picture p = {
-        .width = width, .height = height, .depth = depth, .colour_type = colour_type};
+    shop_picture p = {.width = width, .height = height, .depth = depth, .colour_type = colour_type};
     uint32_t values = 1u << depth;
     if (colour_type == 3) {
         p.palette_count = (int)(values < 7 ? values : 7);
@@ -104,7 +101,8 @@ static void refuse(const fw_bytes *file, const char *words)
     fw_greys layer = {0};
     fw_png_format format = {0};
     fw_fault fault = {0};
-    const fw_status status = fw_png_decode(file->data, file->size, "a.png", &layer, &format, &fault);
+    const fw_status status =
+        fw_png_decode(file->data, file->size, "a.png", &layer, &format, &fault);
     assert_fault(status, &fault, FW_INPUT, words);
     assert_non_null(strstr(fault.text, "a.png"));
     fw_png_format_free(&format);
@@ -126,8 +124,7 @@ static void test_colour_is_refused_with_its_first_pixel(void **state)
     for (int i = 0; i < 9; i++)
         rgb[i] = 200;
     rgb[(2 * 4 + 1) * 3 + 2] = 77; /* row 2, column 1, blue */
-    const shop_picture p = {
-        .width = 4, .height = 3, .depth = 8, .colour_type = 2, .samples = rgb};
+    const shop_picture p = {.width = 4, .height = 3, .depth = 8, .colour_type = 2, .samples = rgb};
     refuse_picture(&p, "red 0, green 0, blue 77 at pixel (1, 2)");
     const shop_picture deep = {
         .width = 4, .height = 3, .depth = 16, .colour_type = 2, .samples = rgb};
@@ -194,8 +191,8 @@ static void put_big_endian(uint8_t *to, uint32_t value)
 /* Puts the right checksum on the chunk that starts at `at`. */
 static void seal_chunk(uint8_t *at)
 {
-    const uint32_t size = (uint32_t)at[0] << 24 | (uint32_t)at[1] << 16 | (uint32_t)at[2] << 8 |
-                          (uint32_t)at[3];
+    const uint32_t size =
+        (uint32_t)at[0] << 24 | (uint32_t)at[1] << 16 | (uint32_t)at[2] << 8 | (uint32_t)at[3];
     put_big_endian(at + 8 + size, (uint32_t)crc32(0, at + 4, size + 4));
 }
 
@@ -204,11 +201,8 @@ static void small_file(fw_bytes *file)
     uint16_t samples[9 * 5];
     for (int i = 0; i < 45; i++)
         samples[i] = (uint16_t)(i % 4 == 0 ? 255 : i);
-    const shop_picture p = {.width = 9,
-                            .height = 5,
-                            .depth = 8,
-                            .samples = samples,
-                            .text = (const uint8_t *)"note"};
+    const shop_picture p = {
+        .width = 9, .height = 5, .depth = 8, .samples = samples, .text = (const uint8_t *)"note"};
     shop_png(&p, file);
 }
 
@@ -221,14 +215,11 @@ static void test_impossible_headers_are_refused(void **state)
     static const struct {
         uint32_t width, height;
         const char *words;
-    } bad[] = {{0, 5, "impossible mask size"},
-               {9, 0, "impossible mask size"},
-               {65536, 5, "impossible mask size"},
-               {0xffffffffu, 0xffffffffu, "impossible mask size"},
-               {65535, 65535, "more than its"},
-               {9, 6, "damaged picture"},
-               {9, 4, "damaged picture"},
-               {10, 5, "damaged picture"}};
+    } bad[] = {
+        {0, 5, "impossible mask size"},     {9, 0, "impossible mask size"},
+        {65536, 5, "impossible mask size"}, {0xffffffffu, 0xffffffffu, "impossible mask size"},
+        {65535, 65535, "more than its"},    {9, 6, "damaged picture"},
+        {9, 4, "damaged picture"},          {10, 5, "damaged picture"}};
     for (size_t i = 0; i < sizeof bad / sizeof *bad; i++) {
         put_big_endian(header + 8, bad[i].width);
         put_big_endian(header + 12, bad[i].height);
@@ -367,9 +358,9 @@ static void test_noise_is_refused(void **state)
     fw_greys layer = {0};
     fw_png_format format = {0};
     bool over;
-    assert_int_equal(fw_png_decode_within(file.data, file.size, "a.png", 1000, &over, &layer,
-                                          &format, NULL),
-                     FW_OK);
+    assert_int_equal(
+        fw_png_decode_within(file.data, file.size, "a.png", 1000, &over, &layer, &format, NULL),
+        FW_OK);
     assert_true(over);
     fw_png_format_free(&format);
     fw_greys_free(&layer);

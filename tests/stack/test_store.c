@@ -1,5 +1,5 @@
-/* Packed layers, the ring and the store give back exactly what went in, in memory and from the file;
- * budgets hold. */
+/* Packed layers, the ring and the store give back exactly what went in, in memory and from the
+ * file; budgets hold. */
 #define _GNU_SOURCE
 
 #include "stack/grey_rows.h"
@@ -183,8 +183,8 @@ static int wrong_layers(const fw_store *store, const fw_layer *layer)
     for (int32_t i = 0; i < 4 * LAYERS; i++) {
         const int32_t n = i * 7 % LAYERS;
         fw_greys got = {0};
-        wrong += fw_store_get(store, n, &got, NULL) != FW_OK ||
-                 !fw_greys_equal(&got, &layer[n].greys);
+        wrong +=
+            fw_store_get(store, n, &got, NULL) != FW_OK || !fw_greys_equal(&got, &layer[n].greys);
         fw_greys_free(&got);
     }
     return wrong;
@@ -271,8 +271,8 @@ static void test_metadata_that_always_differs_is_bounded(void **state)
     fw_fault fault = {0};
     fw_status status = FW_OK;
     shop_layer(10, 10, 255, &layer.greys);
-    assert_int_equal(
-        fw_bytes_append(&layer.format.kept[0], text, sizeof text, "test", NULL), FW_OK);
+    assert_int_equal(fw_bytes_append(&layer.format.kept[0], text, sizeof text, "test", NULL),
+                     FW_OK);
     assert_int_equal(fw_store_open(&budget, shop, &store, NULL), FW_OK);
     for (layer.index = 0; layer.index < 100 && status == FW_OK; layer.index++) {
         layer.format.kept[0].data[0] = (uint8_t)layer.index;

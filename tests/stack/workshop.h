@@ -1,5 +1,5 @@
-/* What the tests of this room share: cmocka, a scratch folder per test, random layers, and PNG files
- * made by libpng's plain writing calls (not by the code under test). Needs _GNU_SOURCE.
+/* What the tests of this room share: cmocka, a scratch folder per test, random layers, and PNG
+ * files made by libpng's plain writing calls (not by the code under test). Needs _GNU_SOURCE.
  */
 #ifndef TESTS_STACK_WORKSHOP_H
 #define TESTS_STACK_WORKSHOP_H
@@ -203,8 +203,8 @@ static inline void shop_png(const shop_picture *p, fw_bytes *out)
     png_structp png = png_create_write_struct(PNG_LIBPNG_VER_STRING, NULL, NULL, NULL);
     png_infop info = png_create_info_struct(png);
     png_set_write_fn(png, out, shop_png_append, NULL);
-    png_set_IHDR(png, info, (png_uint_32)p->width, (png_uint_32)p->height, p->depth,
-                 p->colour_type, p->interlaced ? PNG_INTERLACE_ADAM7 : PNG_INTERLACE_NONE,
+    png_set_IHDR(png, info, (png_uint_32)p->width, (png_uint_32)p->height, p->depth, p->colour_type,
+                 p->interlaced ? PNG_INTERLACE_ADAM7 : PNG_INTERLACE_NONE,
                  PNG_COMPRESSION_TYPE_DEFAULT, PNG_FILTER_TYPE_DEFAULT);
     if (p->palette_count > 0)
         png_set_PLTE(png, info, p->palette, p->palette_count);
@@ -240,10 +240,8 @@ static inline void shop_png_of(const fw_greys *layer, fw_bytes *out)
                 samples[y * layer->width + x] = (uint16_t)layer->run[i].grey;
         }
     }
-    const shop_picture p = {.width = layer->width,
-                            .height = layer->height,
-                            .depth = 8,
-                            .samples = samples};
+    const shop_picture p = {
+        .width = layer->width, .height = layer->height, .depth = 8, .samples = samples};
     shop_png(&p, out);
     free(samples);
 }
