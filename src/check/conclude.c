@@ -56,7 +56,8 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out, "margins: they need both cards");
     not_checked(out, "peel with tilt, slide or a peeling film: the load is a straight pull on a "
                      "rigid frame");
-    not_checked(out, "lever action on the posts: each place loads its nearest anchor only");
+    not_checked(out,
+                "lever action on the posts: each place loads only the anchor nearest to the plate");
     not_checked(out,
                 "bending and buckling of posts, punching of the skin round a tip, necks within "
                 "the part");
