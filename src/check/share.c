@@ -1,8 +1,9 @@
 #include "check/share.h"
 
+#include "check/contacts.h"
 #include "check/loads.h"
+#include "check/sections.h"
 #include "fault/memory.h"
-#include "posts/profile.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -45,185 +46,7 @@ static fw_status open_accounts(fw_share *share, fw_fault *fault)
     return FW_OK;
 }
 
-/* ---- contacts ---------------------------------------------------------------------------- */
-
-/* Every solid region of layer 0 that is not post alone stands on the plate by itself. */
-static fw_status add_plate(fw_share *share, fw_sheet *sheet, uint32_t region, const fw_runs *part,
-                           fw_fault *fault)
-{
-    const fw_runs *solid = fw_slice_solid(&sheet->slice);
-    const fw_regions *regions = fw_slice_solid_regions(&sheet->slice);
-    fw_runs *contact = NULL;
-    FW_TRY(fw_contacts_add(&sheet->contacts, FW_PLATE_ANCHOR + (int32_t)share->plate_count,
-                           &contact, fault));
-    FW_TRY(fw_runs_begin(contact, solid->width, solid->height, fault));
-    const fw_region *r = &regions->region[region];
-    for (int32_t y = r->y0; y < r->y1; y++) {
-        for (uint32_t i = part->row[y]; i < part->row[y + 1]; i++) {
-            const uint32_t in = fw_runs_find(solid, part->run[i].x0, y);
-            if (in != UINT32_MAX && regions->label[in] == region)
-                FW_TRY(fw_runs_push(contact, y, part->run[i].x0, part->run[i].x1, fault));
-        }
-    }
-    fw_runs_finish(contact);
-    FW_TRY(fw_grow((void **)&share->plate, &share->plate_capacity, share->plate_count + 1,
-                   sizeof *share->plate, holder, fault));
-    const double pixels = (double)r->pixels, mm2 = share->setup->px_mm * share->setup->py_mm;
-    const uint32_t in_part = fw_runs_find(fw_sheet_part(sheet), r->first_x, r->first_y);
-    share->plate[share->plate_count++] = (fw_plate_account){
-        .part = in_part != UINT32_MAX
-                    ? sheet->part_body[fw_sheet_part_regions(sheet)->label[in_part]]
-                    : UINT32_MAX,
-        .area_mm2 = (double)fw_runs_pixels(contact) * mm2,
-        .x_mm = fw_setup_x(share->setup, (double)r->sum_x / pixels),
-        .y_mm = fw_setup_y(share->setup, (double)r->sum_y / pixels),
-        .load_layer = -1};
-    return FW_OK;
-}
-
-static fw_status add_plates(fw_share *share, fw_sheet *sheet, fw_fault *fault)
-{
-    const fw_runs *solid = fw_slice_solid(&sheet->slice);
-    fw_runs posts = {0}, part = {0};
-    fw_status status = FW_OK;
-    if (sheet->solid_members.count > 0) {
-        status = fw_members_set(&sheet->solid_members, NULL, NULL, &posts, fault);
-        if (status == FW_OK)
-            status = fw_runs_subtract(solid, &posts, &part, fault);
-    }
-    const uint32_t count = fw_slice_solid_regions(&sheet->slice)->count;
-    for (uint32_t r = 0; r < count && status == FW_OK; r++) {
-        if (!sheet->posts_only[r])
-            status = add_plate(share, sheet, r, posts.count > 0 ? &part : solid, fault);
-    }
-    fw_runs_free(&posts);
-    fw_runs_free(&part);
-    return status;
-}
-
-/* Beside the part (a tip on a slope) a post holds it through the pixels that it shares a region
- * with. */
-static fw_status add_beside(fw_sheet *sheet, fw_fault *fault)
-{
-    int32_t last = -1;
-    for (size_t i = 0; i < sheet->pieces.count; i++) {
-        const fw_member_piece *piece = &sheet->pieces.item[i];
-        if (sheet->posts_only[piece->region] || piece->post == last)
-            continue;
-        last = piece->post;
-        fw_runs *contact = NULL;
-        FW_TRY(fw_contacts_add(&sheet->contacts, piece->post, &contact, fault));
-        FW_TRY(fw_members_of(&sheet->solid_members, piece->post, contact, fault));
-    }
-    return FW_OK;
-}
-
-/* At its tip layer a post holds what lies on its last section. */
-static fw_status add_on_top(fw_sheet *sheet, const fw_sheet *before, int32_t post, fw_fault *fault)
-{
-    fw_runs section = {0};
-    fw_runs *contact = NULL;
-    fw_status status = fw_members_of(&before->solid_members, post, &section, fault);
-    if (status == FW_OK && section.count > 0) {
-        status = fw_contacts_add(&sheet->contacts, post, &contact, fault);
-        if (status == FW_OK)
-            status = fw_runs_intersect(&section, fw_slice_solid(&sheet->slice), contact, fault);
-    }
-    fw_runs_free(&section);
-    return status;
-}
-
-static fw_status find_contacts(fw_share *share, fw_sheet *sheet, const fw_sheet *before,
-                               fw_fault *fault)
-{
-    if (before == NULL)
-        return add_plates(share, sheet, fault);
-    if (share->plan == NULL)
-        return FW_OK; /* the placing hook has noted them */
-    FW_TRY(add_beside(sheet, fault));
-    if (before->solid_members.count == 0)
-        return FW_OK;
-    for (size_t p = 0; p < share->posts->count; p++) {
-        if (share->posts->item[p].tip_layer == sheet->layer && share->posts->item[p].routed)
-            FW_TRY(add_on_top(sheet, before, (int32_t)p, fault));
-    }
-    return FW_OK;
-}
-
-/* ---- what posts are made of --------------------------------------------------------------- */
-
-static void shrink(double *area, double to)
-{
-    *area = fmin(*area, to);
-}
-
-static void measure_section(fw_share *share, int32_t layer, int32_t index, double area)
-{
-    const fw_post *post = &share->posts->item[index];
-    const double t = share->setup->t_mm;
-    double *areas = share->post[index].section.area_mm2;
-    const fw_zone zone = fw_post_zone(post, fw_post_middle(layer, t), fw_post_face(post, t));
-    if (layer == 0)
-        shrink(&areas[FW_POST_FOOT], area);
-    shrink(&areas[zone == FW_ZONE_NECK ? FW_POST_NECK : FW_POST_SHAFT], area);
-    if (layer == post->tip_layer - 1)
-        shrink(&areas[FW_POST_TIP], area);
-    share->post[index].seen_layers++;
-}
-
-static int by_post(const void *left, const void *right)
-{
-    const fw_member_piece *a = left, *b = right;
-    return (a->post > b->post) - (a->post < b->post);
-}
-
-/* Sums the pieces of each post over its regions. */
-static fw_status measure_sections(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
-{
-    const size_t count = sheet->pieces.count;
-    fw_member_piece *piece = NULL;
-    FW_TRY(fw_allocate((void **)&piece, count, sizeof *piece, holder, fault));
-    for (size_t i = 0; i < count; i++)
-        piece[i] = sheet->pieces.item[i];
-    if (count > 0)
-        qsort(piece, count, sizeof *piece, by_post);
-    for (size_t i = 0; i < count;) {
-        const int32_t post = piece[i].post;
-        int64_t pixels = 0;
-        for (; i < count && piece[i].post == post; i++)
-            pixels += piece[i].pixels;
-        measure_section(share, sheet->layer, post,
-                        (double)pixels * share->setup->px_mm * share->setup->py_mm);
-    }
-    free(piece);
-    return FW_OK;
-}
-
-/* One group for each region of layer 0 with posts in it; the pieces come sorted by region. */
-static fw_status group_feet(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
-{
-    for (size_t i = 0; i < sheet->pieces.count; i++) {
-        const fw_member_piece *piece = &sheet->pieces.item[i];
-        if (i == 0 || piece->region != sheet->pieces.item[i - 1].region) {
-            FW_TRY(fw_grow((void **)&share->group, &share->group_capacity, share->group_count + 1,
-                           sizeof *share->group, holder, fault));
-            share->group[share->group_count++] = (fw_foot_group){0};
-        }
-        share->group[share->group_count - 1].area_mm2 +=
-            (double)piece->pixels * share->setup->px_mm * share->setup->py_mm;
-        share->post[piece->post].group = (int32_t)share->group_count - 1;
-    }
-    return FW_OK;
-}
-
-/* The layer in which the tip's end must lie wholly in the part: the first one without bite. */
-static int32_t end_layer(const fw_share *share, const fw_post *post)
-{
-    const int32_t end = post->tip_layer + post->bite_layers;
-    return end < share->setup->layers ? end : share->setup->layers - 1;
-}
-
-static void settle_waiting(fw_share *share, int32_t post, fw_layer_row *rows)
+void fw_share_settle(fw_share *share, int32_t post, fw_layer_row *rows)
 {
     size_t kept = 0;
     const double capacity =
@@ -238,48 +61,6 @@ static void settle_waiting(fw_share *share, int32_t post, fw_layer_row *rows)
     }
     share->waiting_count = kept;
 }
-
-static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t index,
-                                 fw_layer_row *rows, fw_fault *fault)
-{
-    const fw_post *post = &share->posts->item[index];
-    fw_post_account *account = &share->post[index];
-    fw_runs footprint = {0}, contact = {0};
-    fw_status status =
-        fw_stamp_post(share->plan, (size_t)index, post->tip_layer - 1, false, &footprint, fault);
-    if (status == FW_OK)
-        status = fw_runs_intersect(&footprint, fw_slice_solid(&sheet->slice), &contact, fault);
-    if (status == FW_OK) {
-        shrink(&account->section.area_mm2[FW_POST_TIP],
-               (double)fw_runs_pixels(&contact) * share->setup->px_mm * share->setup->py_mm);
-        account->contact_known = true;
-        settle_waiting(share, index, rows);
-    }
-    if (status == FW_OK && contact.count > 0) {
-        int32_t y = 0;
-        while (contact.row[y + 1] == 0)
-            y++;
-        const uint32_t run = fw_runs_find(fw_sheet_part(sheet), contact.run[0].x0, y);
-        if (run != UINT32_MAX)
-            account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
-    }
-    fw_runs_free(&footprint);
-    fw_runs_free(&contact);
-    return status;
-}
-
-static fw_status measure_contacts(fw_share *share, const fw_sheet *sheet, fw_layer_row *rows,
-                                  fw_fault *fault)
-{
-    for (size_t p = 0; p < share->posts->count; p++) {
-        const fw_post *post = &share->posts->item[p];
-        if (post->routed && end_layer(share, post) == sheet->layer)
-            FW_TRY(measure_contact(share, sheet, (int32_t)p, rows, fault));
-    }
-    return FW_OK;
-}
-
-/* ---- loads ---------------------------------------------------------------------------------- */
 
 typedef struct taking {
     fw_share *share;
@@ -439,15 +220,11 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
                         fw_layer_row *rows, fw_fault *fault)
 {
     FW_TRY(open_accounts(share, fault));
-    if (share->plan != NULL) {
-        FW_TRY(measure_sections(share, sheet, fault));
-        if (before == NULL)
-            FW_TRY(group_feet(share, sheet, fault));
-        FW_TRY(measure_contacts(share, sheet, rows, fault));
-    }
+    if (share->plan != NULL)
+        FW_TRY(fw_sections_measure(share, sheet, rows, fault));
     if (share->tributary == NULL)
         return FW_OK;
-    FW_TRY(find_contacts(share, sheet, before, fault));
+    FW_TRY(fw_contacts_find(share, sheet, before, fault));
     FW_TRY(step_tributary(share, sheet, before, fault));
     taking now = {share, sheet->layer};
     const fw_load_taker taker = {take_anchor, take_post, &now};
@@ -464,6 +241,6 @@ void fw_share_finish(fw_share *share, fw_layer_row *rows)
         if (account->contact_known || share->plan == NULL)
             continue;
         account->section.area_mm2[FW_POST_TIP] = 0;
-        settle_waiting(share, (int32_t)p, rows);
+        fw_share_settle(share, (int32_t)p, rows);
     }
 }

@@ -72,6 +72,9 @@ fw_status fw_share_open(const fw_setup *setup, const fw_posts *posts, const fw_s
 fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before,
                         fw_layer_row *rows, fw_fault *fault);
 
+/* The contact of a post is known now: gives rows the margins of the layers that waited for it. */
+void fw_share_settle(fw_share *share, int32_t post, fw_layer_row *rows);
+
 /* After the last layer: posts whose contact was never seen count as holding nothing. */
 void fw_share_finish(fw_share *share, fw_layer_row *rows);
 void fw_share_close(fw_share *share);

@@ -167,8 +167,8 @@ static void wall_with_one_anchor(void **state)
     scene_free(&s);
 }
 
-/* A U: its right arm is nearest to the left anchor across the slot, but by path to its own. The
- * slot is thinner than a cell, so both arms have pixels in the same cells. */
+/* A U: the top of its right arm is nearest to the left anchor across the slot, but by path to its
+ * own. The slot is as wide as a cell: see the limit in the header. */
 static void round_a_slot_and_not_across_it(void **state)
 {
     (void)state;
@@ -176,20 +176,36 @@ static void round_a_slot_and_not_across_it(void **state)
     uint8_t map[W * H];
     scene s = scene_new(W, H, 0.05, 0.05);
     memset(map, SOLID, sizeof map);
-    box(map, W, 19, 0, 21, 152, 0);            /* slot, joined in the last 8 rows */
-    box(map, W, 0, 0, 19, 8, ANCHOR);          /* end of the left arm */
+    box(map, W, 16, 0, 24, 152, 0);            /* slot, joined in the last 8 rows */
+    box(map, W, 0, 0, 16, 8, ANCHOR);          /* end of the left arm */
     box(map, W, 32, 120, 40, 128, ANCHOR + 1); /* far down the right arm */
     advance(&s, map, 0.05, false);
-    assert_int_equal(owner(&s, 18, 20), 0);
-    assert_int_equal(owner(&s, 21, 20), 1);
-    assert_int_equal(owner(&s, 21, 2), 1);
+    assert_int_equal(owner(&s, 15, 20), 0);
+    assert_int_equal(owner(&s, 24, 20), 1);
+    assert_int_equal(owner(&s, 24, 2), 1);
     scene_free(&s);
-    /* Cut in two: then each half knows its own anchor only, even in the cells that they share. */
-    s = scene_new(W, H, 0.05, 0.05);
+}
+
+/* Two bars 2 pixels apart: both have pixels in the same cells, and neither knows the other's
+ * anchor. */
+static void neighbouring_regions_do_not_leak(void **state)
+{
+    (void)state;
+    enum { W = 40, H = 160 };
+    uint8_t map[W * H];
+    scene s = scene_new(W, H, 0.05, 0.05);
+    memset(map, SOLID, sizeof map);
     box(map, W, 19, 0, 21, H, 0);
+    box(map, W, 0, 0, 19, 8, ANCHOR);
+    box(map, W, 32, 152, 40, 160, ANCHOR + 1);
     advance(&s, map, 0.05, false);
-    assert_int_equal(owner(&s, 18, 159), 0);
-    assert_int_equal(owner(&s, 21, 0), 1);
+    box(map, W, 0, 0, 19, 8, SOLID);
+    box(map, W, 32, 152, 40, 160, SOLID);
+    advance(&s, map, 0.05, false);
+    for (int y = 0; y < H; y++) {
+        assert_int_equal(owner(&s, 18, y), 0);
+        assert_int_equal(owner(&s, 21, y), 1);
+    }
     scene_free(&s);
 }
 
@@ -492,6 +508,7 @@ int main(void)
         cmocka_unit_test(ties_go_to_the_smaller_anchor),
         cmocka_unit_test(wall_with_one_anchor),
         cmocka_unit_test(round_a_slot_and_not_across_it),
+        cmocka_unit_test(neighbouring_regions_do_not_leak),
         cmocka_unit_test(part_that_stands_on_the_plate),
         cmocka_unit_test(merging_bodies),
         cmocka_unit_test(random_volumes_equal_bellman_ford),

@@ -1,0 +1,129 @@
+#include "check/sections.h"
+
+#include "fault/memory.h"
+#include "posts/profile.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+static const char holder[] = "sections of posts";
+
+static void shrink(double *area, double to)
+{
+    *area = fmin(*area, to);
+}
+
+static void measure_section(fw_share *share, int32_t layer, int32_t index, double area)
+{
+    const fw_post *post = &share->posts->item[index];
+    const double t = share->setup->t_mm;
+    double *areas = share->post[index].section.area_mm2;
+    const fw_zone zone = fw_post_zone(post, fw_post_middle(layer, t), fw_post_face(post, t));
+    if (layer == 0)
+        shrink(&areas[FW_POST_FOOT], area);
+    shrink(&areas[zone == FW_ZONE_NECK ? FW_POST_NECK : FW_POST_SHAFT], area);
+    if (layer == post->tip_layer - 1)
+        shrink(&areas[FW_POST_TIP], area);
+    share->post[index].seen_layers++;
+}
+
+static int by_post(const void *left, const void *right)
+{
+    const fw_member_piece *a = left, *b = right;
+    return (a->post > b->post) - (a->post < b->post);
+}
+
+/* Sums the pieces of each post over its regions. */
+static fw_status measure_sections(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
+{
+    const size_t count = sheet->pieces.count;
+    fw_member_piece *piece = NULL;
+    FW_TRY(fw_allocate((void **)&piece, count, sizeof *piece, holder, fault));
+    for (size_t i = 0; i < count; i++)
+        piece[i] = sheet->pieces.item[i];
+    if (count > 0)
+        qsort(piece, count, sizeof *piece, by_post);
+    for (size_t i = 0; i < count;) {
+        const int32_t post = piece[i].post;
+        int64_t pixels = 0;
+        for (; i < count && piece[i].post == post; i++)
+            pixels += piece[i].pixels;
+        measure_section(share, sheet->layer, post,
+                        (double)pixels * share->setup->px_mm * share->setup->py_mm);
+    }
+    free(piece);
+    return FW_OK;
+}
+
+/* One group for each region of layer 0 with posts in it; the pieces come sorted by region. */
+static fw_status group_feet(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
+{
+    for (size_t i = 0; i < sheet->pieces.count; i++) {
+        const fw_member_piece *piece = &sheet->pieces.item[i];
+        if (i == 0 || piece->region != sheet->pieces.item[i - 1].region) {
+            FW_TRY(fw_grow((void **)&share->group, &share->group_capacity, share->group_count + 1,
+                           sizeof *share->group, holder, fault));
+            share->group[share->group_count++] = (fw_foot_group){0};
+        }
+        share->group[share->group_count - 1].area_mm2 +=
+            (double)piece->pixels * share->setup->px_mm * share->setup->py_mm;
+        share->post[piece->post].group = (int32_t)share->group_count - 1;
+    }
+    return FW_OK;
+}
+
+/* The layer in which the tip's end must lie wholly in the part: the first one without bite. */
+static int32_t end_layer(const fw_share *share, const fw_post *post)
+{
+    const int32_t end = post->tip_layer + post->bite_layers;
+    return end < share->setup->layers ? end : share->setup->layers - 1;
+}
+
+static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t index,
+                                 fw_layer_row *rows, fw_fault *fault)
+{
+    const fw_post *post = &share->posts->item[index];
+    fw_post_account *account = &share->post[index];
+    fw_runs footprint = {0}, contact = {0};
+    fw_status status =
+        fw_stamp_post(share->plan, (size_t)index, post->tip_layer - 1, false, &footprint, fault);
+    if (status == FW_OK)
+        status = fw_runs_intersect(&footprint, fw_slice_solid(&sheet->slice), &contact, fault);
+    if (status == FW_OK) {
+        shrink(&account->section.area_mm2[FW_POST_TIP],
+               (double)fw_runs_pixels(&contact) * share->setup->px_mm * share->setup->py_mm);
+        account->contact_known = true;
+        fw_share_settle(share, index, rows);
+    }
+    if (status == FW_OK && contact.count > 0) {
+        int32_t y = 0;
+        while (contact.row[y + 1] == 0)
+            y++;
+        const uint32_t run = fw_runs_find(fw_sheet_part(sheet), contact.run[0].x0, y);
+        if (run != UINT32_MAX)
+            account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
+    }
+    fw_runs_free(&footprint);
+    fw_runs_free(&contact);
+    return status;
+}
+
+static fw_status measure_contacts(fw_share *share, const fw_sheet *sheet, fw_layer_row *rows,
+                                  fw_fault *fault)
+{
+    for (size_t p = 0; p < share->posts->count; p++) {
+        const fw_post *post = &share->posts->item[p];
+        if (post->routed && end_layer(share, post) == sheet->layer)
+            FW_TRY(measure_contact(share, sheet, (int32_t)p, rows, fault));
+    }
+    return FW_OK;
+}
+
+fw_status fw_sections_measure(fw_share *share, const fw_sheet *sheet, fw_layer_row *rows,
+                              fw_fault *fault)
+{
+    FW_TRY(measure_sections(share, sheet, fault));
+    if (sheet->layer == 0)
+        FW_TRY(group_feet(share, sheet, fault));
+    return measure_contacts(share, sheet, rows, fault);
+}
