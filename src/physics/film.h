@@ -74,7 +74,8 @@ void fw_film_solution_free(fw_film_solution *solution);
 size_t fw_film_solution_bytes(const fw_film_solution *solution);
 
 /* The edge of the blocks: the largest power of two q, at most 64, for which the runs (rows and
- * columns alike) shorter than 16 q hold under 1 % of the sum of l^3. 1 for an empty film. */
+ * columns alike) shorter than 16 q hold under 1 % of the sum of l^3, and the hydraulic diameter
+ * 4 area / perimeter is at least 16 q. 1 for an empty film. */
 int32_t fw_film_choose_cell(const fw_film_shape *shape);
 
 /* Upper bound of G in mm4 from runs alone, for every cell size: leaving out the flow across the

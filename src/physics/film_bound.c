@@ -9,7 +9,7 @@ enum { SHORT_RUN = 16, CLASSES = 7 }; /* blocks of 1 << 0 .. 1 << (CLASSES - 1) 
 
 /* Sums over the runs of one direction, lengths in px, cavities counted as film. */
 typedef struct lengths {
-    double cubes, sum;
+    double cubes, sum, count;
     double below[CLASSES]; /* cubes of the runs shorter than SHORT_RUN << class */
 } lengths;
 
@@ -18,6 +18,7 @@ static void see(lengths *all, int32_t length)
     double cube = (double)length * length * length;
     all->cubes += cube;
     all->sum += length;
+    all->count += 1;
     for (int c = 0; c < CLASSES; c++) {
         if (length < SHORT_RUN << c)
             all->below[c] += cube;
@@ -124,13 +125,29 @@ static int allowed(const lengths *all)
     return c;
 }
 
+/* Crossing struts are long both ways and thin all the same: their runs alone look like plates. So
+ * blocks must also stay fine against the hydraulic diameter, 4 area / perimeter: twice the width of
+ * a strip, the side of a square. Every run has a rim at both ends. */
+static int allowed_by_rim(const lengths *rows, const lengths *columns)
+{
+    const double diameter = 2 * rows->sum / (rows->count + columns->count);
+    int c = CLASSES - 1;
+    while (c > 0 && SHORT_RUN << c > diameter)
+        c--;
+    return c;
+}
+
 int32_t fw_film_choose_cell(const fw_film_shape *shape)
 {
     lengths rows = row_lengths(shape), columns;
     if (!column_lengths(shape, &columns))
         return 1; /* the accurate choice; what follows will say that there is no memory */
+    if (rows.count == 0)
+        return 1;
     int by_rows = allowed(&rows), by_columns = allowed(&columns);
-    return 1 << (by_rows < by_columns ? by_rows : by_columns);
+    int least = by_rows < by_columns ? by_rows : by_columns;
+    int by_rim = allowed_by_rim(&rows, &columns);
+    return 1 << (least < by_rim ? least : by_rim);
 }
 
 double fw_film_bound(const fw_film_shape *shape)

@@ -2,11 +2,15 @@
  *
  * Coordinates in mm: x along columns, y down the rows, z from the plate to the window, all in the
  * supported (lifted) stack. Every horizontal section of a post is a full circle whose diameter
- * depends on z alone: z_face .. z_face + bite   tip_mm                (inside the part) z_face -
- * neck .. z_face   tip_mm -> shaft_mm    (linear, widening toward the plate) foot height .. neck
- * end   shaft_mm 0 .. foot height          shaft_mm -> foot_mm   (45 degrees, widening toward the
- * plate) where z_face is the plate-facing side of layer tip_layer. Where post is too short for all
- * of them the larger diameter wins.
+ * depends on z alone:
+ *
+ *   - z_face .. z_face + bite: tip_mm (inside the part);
+ *   - z_face - neck .. z_face: from shaft_mm to tip_mm (linear, widening toward the plate);
+ *   - foot height .. end of the neck: shaft_mm;
+ *   - 0 .. foot height: from foot_mm to shaft_mm (45 degrees, widening toward the plate);
+ *
+ * where z_face is the plate-facing side of layer tip_layer. Where a post is too short for all of
+ * them the larger diameter wins.
  */
 #ifndef FW_POST_H
 #define FW_POST_H

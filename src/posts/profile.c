@@ -91,12 +91,3 @@ bool fw_post_disc(const fw_post *post, int32_t layer, double layer_mm, fw_disc *
     disc->diameter_mm = fw_post_diameter(post, z_mm, fw_post_face(post, layer_mm));
     return fw_post_centre(post, z_mm, &disc->x_mm, &disc->y_mm);
 }
-
-/* The cap is what a reader of layers has to look ahead for. The small part taken off keeps a bite
- * that is a whole number of layers from gaining one by round-off. */
-int32_t fw_post_bite_layers(double bite_mm, double tip_mm, double slope_tan, double layer_mm)
-{
-    const double deepest_mm = 0.5, round_off = 1e-9;
-    double depth_mm = fmin(fmax(bite_mm, tip_mm / 2.0 * slope_tan), deepest_mm);
-    return (int32_t)fmax(ceil(depth_mm / layer_mm - round_off), 1.0);
-}

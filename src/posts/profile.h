@@ -36,9 +36,4 @@ double fw_post_middle(int32_t layer, double layer_mm);
  * outside fw_post_layers. */
 bool fw_post_disc(const fw_post *post, int32_t layer, double layer_mm, fw_disc *disc);
 
-/* Layers of bite: ceil(min(0.5, max(bite_mm, tip_mm / 2 * slope_tan)) / layer_mm), at least 1, so
- * that a tip on a slope still has part all around its end. slope_tan: tangent of the face's angle
- * from the plate, >= 0. */
-int32_t fw_post_bite_layers(double bite_mm, double tip_mm, double slope_tan, double layer_mm);
-
 #endif

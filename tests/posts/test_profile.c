@@ -150,19 +150,6 @@ static void test_layers(void **state)
     assert_false(fw_post_disc(&post, 0, layer_mm, &disc));
 }
 
-static void test_bite(void **state)
-{
-    (void)state;
-    assert_int_equal(fw_post_bite_layers(0.10, 0.3, 0.0, 0.05), 2);
-    assert_int_equal(fw_post_bite_layers(0.3, 0.3, 0.0, 0.1), 3);
-    assert_int_equal(fw_post_bite_layers(0.07, 0.1, 0.0, 0.01), 7);
-    assert_int_equal(fw_post_bite_layers(0.11, 0.3, 0.0, 0.05), 3);
-    assert_int_equal(fw_post_bite_layers(0.0, 0.3, 0.0, 0.05), 1);
-    assert_int_equal(fw_post_bite_layers(0.10, 0.4, 1.0, 0.05), 4);
-    assert_int_equal(fw_post_bite_layers(0.10, 0.8, 2.7, 0.05), 10);
-    assert_int_equal(fw_post_bite_layers(0.10, 0.8, (double)INFINITY, 0.05), 10);
-}
-
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -173,7 +160,6 @@ int main(void)
         cmocka_unit_test(test_no_neck_no_foot),
         cmocka_unit_test(test_centre_follows_the_path),
         cmocka_unit_test(test_layers),
-        cmocka_unit_test(test_bite),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
