@@ -46,12 +46,14 @@ typedef struct heap {
     size_t count, capacity;
 } heap;
 
-static void die(const char *what) {
+static void die(const char *what)
+{
     fprintf(stderr, "dense_debt: %s\n", what);
     exit(3);
 }
 
-static void push(heap *h, entry e) {
+static void push(heap *h, entry e)
+{
     if (h->count == h->capacity) {
         h->capacity = h->capacity ? 2 * h->capacity : 4096;
         h->item = realloc(h->item, h->capacity * sizeof *h->item);
@@ -64,7 +66,8 @@ static void push(heap *h, entry e) {
     h->item[i] = e;
 }
 
-static entry pop(heap *h) {
+static entry pop(heap *h)
+{
     entry top = h->item[0], last = h->item[--h->count];
     size_t i = 0;
     for (size_t child = 1; child < h->count; child = 2 * i + 1) {
@@ -79,12 +82,14 @@ static entry pop(heap *h) {
     return top;
 }
 
-static int is_solid(const grid *g, int x, int y) {
+static int is_solid(const grid *g, int x, int y)
+{
     return x >= 0 && y >= 0 && x < g->width && y < g->height &&
            (g->solid[(size_t)y * (size_t)g->width + (size_t)x] & 1);
 }
 
-static int has_room(const grid *g, int x, int y, step s) {
+static int has_room(const grid *g, int x, int y, step s)
+{
     int along_x = abs(s.dx) == 2;
     if (abs(s.dx) + abs(s.dy) == 1)
         return 1;
@@ -96,7 +101,8 @@ static int has_room(const grid *g, int x, int y, step s) {
 }
 
 /* Offers the value of the pixel to its neighbours; those that it betters go on the heap. */
-static void relax(const grid *g, int32_t at, heap *h) {
+static void relax(const grid *g, int32_t at, heap *h)
+{
     int x = at % g->width, y = at / g->width;
     for (int i = 0; i < 16; ++i) {
         step s = STEPS[i];
@@ -111,7 +117,8 @@ static void relax(const grid *g, int32_t at, heap *h) {
     }
 }
 
-static void spread(const grid *g, heap *h) {
+static void spread(const grid *g, heap *h)
+{
     int32_t count = g->width * g->height;
     for (int32_t at = 0; at < count; ++at)
         if ((g->solid[at] & 1) && isfinite(g->value[at]))
@@ -125,7 +132,8 @@ static void spread(const grid *g, heap *h) {
 
 /* What each pixel of the layer starts with: 0 at a source, what it had less the credit if it was in
  * the layer before, else infinite. */
-static void carry(const grid *g, const uint8_t *before, const float *old, double credit) {
+static void carry(const grid *g, const uint8_t *before, const float *old, double credit)
+{
     for (int32_t at = 0; at < g->width * g->height; ++at) {
         g->value[at] = INFINITY;
         if ((g->solid[at] & 1) && (g->solid[at] & 2))
@@ -135,7 +143,8 @@ static void carry(const grid *g, const uint8_t *before, const float *old, double
     }
 }
 
-static void print_layer(const grid *g, int layer, double reach, double sure) {
+static void print_layer(const grid *g, int layer, double reach, double sure)
+{
     long over = 0, surely = 0, adrift = 0;
     int32_t worst = 0;
     float largest = -1;
@@ -153,10 +162,12 @@ static void print_layer(const grid *g, int layer, double reach, double sure) {
     }
     printf("%d %ld %ld %ld %.4f %d %d\n", layer, over, surely, adrift, fmaxf(largest, 0),
            worst % g->width, worst / g->width);
+    fflush(stdout); /* the caller reads one line for each layer that it writes */
     fflush(stdout); /* the reader answers line by line */
 }
 
-int main(int argc, char **argv) {
+int main(int argc, char **argv)
+{
     if (argc != 8) {
         fputs("usage: dense_debt WIDTH HEIGHT PX_MM PY_MM CREDIT_MM REACH_MM SURE_MM < volume\n",
               stderr);
