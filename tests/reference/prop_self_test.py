@@ -82,8 +82,8 @@ class Case:
         return raw, out
 
 
-def drop_post(case):
-    case.posts = case.posts[:4] + case.posts[5:]
+def drop_posts(case):
+    case.posts = case.posts[:4] + case.posts[6:7]
     case.layers = stamp(case.raw, case.posts)
 
 
@@ -137,7 +137,7 @@ def change_input(raw, _):
     file.write_bytes(file.read_bytes() + b"\0")
 
 
-BROKEN = [("overreach", drop_post, None), ("lowered", lower, None), ("outside", stray, None),
+BROKEN = [("overreach", drop_posts, None), ("lowered", lower, None), ("outside", stray, None),
           ("adrift", cut_shaft, None), ("onset", foreign_onset, None),
           ("clearance", beside_wall, None), ("sealed", plug, None),
           ("does not reach the plate", unrouted, None), ("encoded anew", None, encode_anew),
