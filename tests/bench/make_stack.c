@@ -1,7 +1,7 @@
 /* Makes a stack of masks for the benchmark: bench_make_stack FOLDER WIDTH HEIGHT LAYERS CLASS
  *
  * prismatic  a plate of blocks with bores, the same in every layer
- * organic    blobs whose outline changes with every layer, grey rims
+ * organic    blobs whose outline moves by up to 0.8 px with every layer, grey rims
  * lattice    struts of 10 px every 50 px, crossing, on a plate that stays
  *
  * First solid in layer 0. Shapes are computed run by run, so that making is not the slow part. */
@@ -57,7 +57,7 @@ static void organic(picture *p, int y, int layer)
         if (abs(y - cy) > 300)
             continue;
         for (int cx = 320; cx + 320 <= p->width; cx += 640) {
-            const double r = 220 + 60 * sin(0.02 * layer + cx * 0.01 + cy * 0.02);
+            const double r = 220 + 60 * sin(0.008 * layer + cx * 0.01 + cy * 0.02);
             const double dy = y - cy, wave = 6 * sin(0.1 * dy + 0.05 * layer);
             const double half = r * r - dy * dy;
             if (half > 0)
