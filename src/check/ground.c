@@ -215,7 +215,7 @@ static fw_status note_gap(fw_ground *ground, const fw_sheet *sheet, fw_findings 
                           fw_fault *fault)
 {
     const int32_t last = ground->last_solid;
-    if (sheet->slice.intended.count == 0)
+    if (fw_sheet_part(sheet)->count == 0) /* posts alone do not bridge a gap in the part */
         return FW_OK;
     ground->last_solid = sheet->layer;
     if (last < 0 || sheet->layer == last + 1)

@@ -39,7 +39,7 @@ typedef struct fw_ground {
     size_t pending_count, pending_capacity;
     fw_carried_peak *peak; /* scratch, [regions] */
     size_t peak_capacity;
-    int32_t last_solid; /* newest layer with anything in it, -1 */
+    int32_t last_solid; /* newest layer with any part in it, -1 */
 } fw_ground;
 
 fw_status fw_ground_open(const fw_setup *setup, fw_ground *out, fw_fault *fault);

@@ -46,8 +46,8 @@ falsework_status fw_say_out(void *unused, const char *bytes, size_t count)
 int fw_say_done(int status)
 {
     clear_progress();
-    if (fflush(stdout) == 0 && ferror(stdout) == 0)
-        return status;
+    if ((fflush(stdout) == 0 && ferror(stdout) == 0) || status == FALSEWORK_MACHINE)
+        return status; /* whatever failed the machine has been said */
     fw_say("could not write the result, stdout, is it closed or full?");
     return FALSEWORK_MACHINE;
 }
