@@ -12,12 +12,14 @@
 
 enum { PATH = 4096 };
 
-static int fail(int status, const char *what, const char *where, const char *advice) {
+static int fail(int status, const char *what, const char *where, const char *advice)
+{
     fprintf(stderr, "falsework-part: %s, %s, %s\n", what, where, advice);
     return status;
 }
 
-static int usage(void) {
+static int usage(void)
+{
     fputs("usage: falsework-part NAME DIR [--layers N]\nparts:", stderr);
     for (int i = 0; i < PART_MODEL_COUNT; ++i)
         fprintf(stderr, " %s (%d layers)", PART_MODELS[i].name, PART_MODELS[i].layers);
@@ -25,14 +27,16 @@ static int usage(void) {
     return 2;
 }
 
-static const part_model *find_model(const char *name) {
+static const part_model *find_model(const char *name)
+{
     for (int i = 0; i < PART_MODEL_COUNT; ++i)
         if (strcmp(PART_MODELS[i].name, name) == 0)
             return &PART_MODELS[i];
     return NULL;
 }
 
-static int write_layer(const part_model *model, int layer, const char *folder, uint8_t *grey) {
+static int write_layer(const part_model *model, int layer, const char *folder, uint8_t *grey)
+{
     char path[PATH];
     int length = snprintf(path, sizeof path, "%s/layer_%04d.png", folder, layer + 1);
     if (length < 0 || length >= PATH)
@@ -42,7 +46,8 @@ static int write_layer(const part_model *model, int layer, const char *folder, u
     return error ? fail(3, strerror(error), path, "name a folder that can be written") : 0;
 }
 
-static int write_stack(const part_model *model, int layers, const char *folder) {
+static int write_stack(const part_model *model, int layers, const char *folder)
+{
     uint8_t *grey = malloc((size_t)model->width_px * (size_t)model->height_px);
     int status = grey ? 0 : fail(3, "out of memory", model->name, "free some memory");
     if (!status && mkdir(folder, 0777) && errno != EEXIST)
@@ -56,7 +61,8 @@ static int write_stack(const part_model *model, int layers, const char *folder) 
     return status;
 }
 
-int main(int argc, char **argv) {
+int main(int argc, char **argv)
+{
     const part_model *model = argc >= 3 ? find_model(argv[1]) : NULL;
     if (!model || (argc != 3 && argc != 5) || (argc == 5 && strcmp(argv[3], "--layers") != 0))
         return usage();

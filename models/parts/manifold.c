@@ -12,14 +12,16 @@
     {PART_ADD, PART_ROD_X, y, z, 2.3, 2.3, 0, 12.0, 21.5, 0},                                      \
         {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, 15.0, 15.8, 0},                                  \
         {PART_ADD, PART_ROD_X, y, z, 3.0, 2.3, 0, 15.8, 17.6, 0},                                  \
-        {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, 18.6, 19.4, 0}, {                                \
+        {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, 18.6, 19.4, 0},                                  \
+    {                                                                                              \
         PART_ADD, PART_ROD_X, y, z, 3.0, 2.3, 0, 19.4, 21.2, 0                                     \
     }
 #define BARB_LEFT(y, z)                                                                            \
     {PART_ADD, PART_ROD_X, y, z, 2.3, 2.3, 0, -21.5, -12.0, 0},                                    \
         {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, -15.8, -15.0, 0},                                \
         {PART_ADD, PART_ROD_X, y, z, 2.3, 3.0, 0, -17.6, -15.8, 0},                                \
-        {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, -19.4, -18.6, 0}, {                              \
+        {PART_ADD, PART_ROD_X, y, z, 3.0, 3.0, 0, -19.4, -18.6, 0},                                \
+    {                                                                                              \
         PART_ADD, PART_ROD_X, y, z, 2.3, 3.0, 0, -21.2, -19.4, 0                                   \
     }
 

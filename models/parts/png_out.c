@@ -7,7 +7,8 @@
 
 /* libpng comes back here by longjmp on an error, so nothing below may hold a local that changes. */
 static int write_rows(png_structp png, png_infop info, FILE *file, const uint8_t *grey, int width,
-                      int height) {
+                      int height)
+{
     if (setjmp(png_jmpbuf(png)))
         return EIO;
     png_init_io(png, file);
@@ -22,7 +23,8 @@ static int write_rows(png_structp png, png_infop info, FILE *file, const uint8_t
     return 0;
 }
 
-static int write_file(FILE *file, const uint8_t *grey, int width, int height) {
+static int write_file(FILE *file, const uint8_t *grey, int width, int height)
+{
     png_structp png = png_create_write_struct(PNG_LIBPNG_VER_STRING, NULL, NULL, NULL);
     png_infop info = png ? png_create_info_struct(png) : NULL;
     int error = info ? write_rows(png, info, file, grey, width, height) : ENOMEM;
@@ -30,7 +32,8 @@ static int write_file(FILE *file, const uint8_t *grey, int width, int height) {
     return error;
 }
 
-int part_write_png(const char *path, const uint8_t *grey, int width, int height) {
+int part_write_png(const char *path, const uint8_t *grey, int width, int height)
+{
     FILE *file = fopen(path, "wb");
     if (!file)
         return errno;

@@ -7,7 +7,8 @@
 enum { LINES = 4 };
 
 /* Adds the length of [from, to] (in pixels) that lies in each pixel of the row. */
-static void cover(double from, double to, int width, double *row) {
+static void cover(double from, double to, int width, double *row)
+{
     int first = (int)fmax(0, floor(from));
     int last = (int)fmin(width - 1, ceil(to) - 1);
     for (int x = first; x <= last; ++x)
@@ -19,7 +20,8 @@ typedef struct reach {
     int from, to;
 } reach;
 
-static void cover_line(const part_model *model, double y, double z, double *row, reach *touched) {
+static void cover_line(const part_model *model, double y, double z, double *row, reach *touched)
+{
     part_spans line;
     part_line(model, y, z, &line);
     for (int i = 0; i < line.count; ++i) {
@@ -31,7 +33,8 @@ static void cover_line(const part_model *model, double y, double z, double *row,
     }
 }
 
-void part_raster(const part_model *model, int layer, uint8_t *grey) {
+void part_raster(const part_model *model, int layer, uint8_t *grey)
+{
     enum { WIDEST = 8192 };
     double row[WIDEST] = {0};
     double z = (layer + 0.5) * model->layer_mm;

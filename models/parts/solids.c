@@ -12,7 +12,8 @@ static const span NOTHING = {1, 0};
 
 /* Half width of a rounded rectangle at the distance |v| from its long axis. Within the straight
  * part it is a; beside the corner a - c + sqrt(c^2 - (v - (b - c))^2). */
-static double rounded_half_width(double a, double b, double c, double v) {
+static double rounded_half_width(double a, double b, double c, double v)
+{
     double into_corner = fabs(v) - (b - c);
     if (fabs(v) > b)
         return -1;
@@ -23,7 +24,8 @@ static double rounded_half_width(double a, double b, double c, double v) {
 
 /* An offset outline keeps its corner centres: half sizes and corner radius all grow by the same
  * amount, the radius not below zero. */
-static span prism_span(const part_solid *s, double y, double z) {
+static span prism_span(const part_solid *s, double y, double z)
+{
     double offset = s->grow * (z - s->from);
     double half =
         rounded_half_width(s->a + offset, s->b + offset, fmax(0, s->c + offset), y - s->y);
@@ -34,7 +36,8 @@ static span prism_span(const part_solid *s, double y, double z) {
 
 /* Along x the radius is r(x) = a + k (x - from); the line is inside where r(x) >= d, with d the
  * distance of the line from the axis: a half line of x, cut to the rod's own range. */
-static span rod_x_span(const part_solid *s, double y, double z) {
+static span rod_x_span(const part_solid *s, double y, double z)
+{
     double d = hypot(y - s->x, z - s->y);
     double k = (s->b - s->a) / (s->to - s->from);
     if (d > fmax(s->a, s->b))
@@ -45,7 +48,8 @@ static span rod_x_span(const part_solid *s, double y, double z) {
     return k > 0 ? (span){reaches, s->to} : (span){s->from, reaches};
 }
 
-static span rod_y_span(const part_solid *s, double y, double z) {
+static span rod_y_span(const part_solid *s, double y, double z)
+{
     double r = s->a + (s->b - s->a) * (y - s->from) / (s->to - s->from);
     double above = z - s->y;
     if (y < s->from || y > s->to || fabs(above) >= r)
@@ -54,7 +58,8 @@ static span rod_y_span(const part_solid *s, double y, double z) {
     return (span){s->x - half, s->x + half};
 }
 
-static span solid_span(const part_solid *s, double y, double z) {
+static span solid_span(const part_solid *s, double y, double z)
+{
     switch (s->shape) {
     case PART_PRISM:
         return prism_span(s, y, z);
@@ -66,7 +71,8 @@ static span solid_span(const part_solid *s, double y, double z) {
     return NOTHING;
 }
 
-void part_line(const part_model *model, double y, double z, part_spans *out) {
+void part_line(const part_model *model, double y, double z, part_spans *out)
+{
     out->count = 0;
     for (int i = 0; i < model->count; ++i) {
         span hit = solid_span(&model->solid[i], y, z);

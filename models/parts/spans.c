@@ -4,7 +4,8 @@
 #include <stdio.h>
 #include <stdlib.h>
 
-static void append(part_spans *set, double from, double to) {
+static void append(part_spans *set, double from, double to)
+{
     if (from >= to)
         return;
     if (set->count == PART_SPANS) {
@@ -16,7 +17,8 @@ static void append(part_spans *set, double from, double to) {
     ++set->count;
 }
 
-void part_spans_add(part_spans *set, double from, double to) {
+void part_spans_add(part_spans *set, double from, double to)
+{
     part_spans joined;
     int i = 0;
     joined.count = 0;
@@ -34,7 +36,8 @@ void part_spans_add(part_spans *set, double from, double to) {
     *set = joined;
 }
 
-void part_spans_cut(part_spans *set, double from, double to) {
+void part_spans_cut(part_spans *set, double from, double to)
+{
     part_spans rest;
     rest.count = 0;
     if (from >= to)

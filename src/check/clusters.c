@@ -117,12 +117,14 @@ static fw_status number_clusters(const fw_regions *regions, const uint8_t *posts
                                                     .x1 = region->x1,
                                                     .y1 = region->y1,
                                                     .posts_only = posts_only[r] != 0,
-                                                    .first_region = r};
+                                                    .first_region = r,
+                                                    .region_count = 1};
             out->of_region[r] = out->count++;
         } else { /* the root is smaller, so it has its number already */
             fw_cluster *cluster = &out->cluster[out->of_region[out->of_region[r]]];
             out->of_region[r] = out->of_region[out->of_region[r]];
             cluster->posts_only = cluster->posts_only && posts_only[r] != 0;
+            cluster->region_count++;
             widen(cluster, region);
         }
     }

@@ -234,6 +234,7 @@ static fw_status ground_sheets(fw_judge *judge, int32_t count, fw_fault *fault)
 
 static fw_status share_sheets(fw_judge *judge, int32_t count, fw_fault *fault)
 {
+    fw_share_new_batch(&judge->share);
     for (int32_t slot = 1; slot <= count; slot++) {
         fw_sheet *sheet = &judge->sheet[slot];
         FW_TRY(fw_share_step(&judge->share, sheet, sheet_before(judge, slot), judge->row, fault));

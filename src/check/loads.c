@@ -1,5 +1,7 @@
 #include "check/loads.h"
 
+#include "fault/memory.h"
+
 /* Where a piece of load pulls. */
 typedef struct place {
     uint32_t region; /* of solid; UINT32_MAX: nothing solid here */
@@ -73,16 +75,147 @@ static fw_status hand_out_at(const fw_sheet *sheet, const fw_tributary *tributar
     return taker->anchor(taker->context, owner, force_N, fault);
 }
 
+/* Who takes a piece of load: owners of a few places in a block of film, each as often as it owns.
+ */
+enum { SAMPLES = 8 }; /* along each side of a block, at most */
+
+typedef struct sampling {
+    const fw_sheet *sheet;
+    const fw_tributary *tributary;
+    const fw_cluster *cluster;
+    uint32_t index; /* of the cluster */
+    place at[SAMPLES * SAMPLES];
+    int32_t owner[SAMPLES * SAMPLES];
+    int32_t count;
+} sampling;
+
+/* Looks at n x n places of the block that holds the cell's centroid; those off the cluster's film
+ * do not count. True when all that count have one owner. */
+static bool look_at_block(sampling *now, const fw_film_cell *cell, int32_t n)
+{
+    const fw_runs *solid = fw_slice_solid(&now->sheet->slice);
+    const uint32_t *label = fw_slice_solid_regions(&now->sheet->slice)->label;
+    const int32_t edge = now->cluster->solution->cell_px;
+    const int32_t x0 = now->cluster->x0 + (int32_t)cell->x_px / edge * edge;
+    const int32_t y0 = now->cluster->y0 + (int32_t)cell->y_px / edge * edge;
+    bool one_owner = true;
+    now->count = 0;
+    for (int32_t i = 0; i < n * n; i++) {
+        const int32_t x = x0 + (2 * (i % n) + 1) * edge / (2 * n);
+        const int32_t y = y0 + (2 * (i / n) + 1) * edge / (2 * n);
+        const uint32_t run = fw_runs_find(solid, x, y);
+        if (run == UINT32_MAX || now->sheet->peel.of_region[label[run]] != now->index)
+            continue;
+        now->at[now->count] = (place){label[run], x, y};
+        now->owner[now->count] = fw_tributary_owner(now->tributary, label[run], x, y);
+        one_owner = one_owner && now->owner[now->count] == now->owner[0];
+        now->count++;
+    }
+    return one_owner;
+}
+
+/* A block that lies in one share goes there whole; one on the border of shares is cut up. */
+static fw_status hand_out_cell(sampling *now, const fw_film_cell *cell, double force_N,
+                               const fw_load_taker *taker, fw_fault *fault)
+{
+    const int32_t edge = now->cluster->solution->cell_px;
+    const int32_t finest = edge < SAMPLES ? edge : SAMPLES;
+    if (edge > 1 && !look_at_block(now, cell, 2))
+        (void)look_at_block(now, cell, finest);
+    if (edge == 1 || now->count == 0)
+        return hand_out_at(now->sheet, now->tributary,
+                           place_of_cell(now->sheet, now->cluster, now->index, cell), force_N,
+                           taker, fault);
+    for (int32_t i = 0; i < now->count; i++)
+        FW_TRY(hand_out_at(now->sheet, now->tributary, now->at[i], force_N / now->count, taker,
+                           fault));
+    return FW_OK;
+}
+
 static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
                                 const fw_tributary *tributary, uint32_t index,
                                 const fw_load_taker *taker, fw_fault *fault)
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
+    sampling now = {.sheet = sheet, .tributary = tributary, .cluster = cluster, .index = index};
     for (uint32_t i = 0; i < cluster->solution->cell_count; i++) {
         const fw_film_cell *cell = &cluster->solution->cell[i];
         const double force_N = setup->q * (double)cell->u_mm2 * (double)cell->area_mm2;
-        FW_TRY(hand_out_at(sheet, tributary, place_of_cell(sheet, cluster, index, cell), force_N,
-                           taker, fault));
+        FW_TRY(hand_out_cell(&now, cell, force_N, taker, fault));
+    }
+    return FW_OK;
+}
+
+/* ---- what comes again ----------------------------------------------------------------------- */
+
+void fw_load_memo_forget(fw_load_memo *memo)
+{
+    memo->entries = memo->pieces = 0;
+}
+
+/* Sums what one cluster gives to each anchor. */
+typedef struct recorder {
+    fw_load_memo *memo;
+    size_t first;
+} recorder;
+
+static fw_status record_anchor(void *context, int32_t anchor, double force_N, fw_fault *fault)
+{
+    const recorder *now = context;
+    fw_load_memo *memo = now->memo;
+    for (size_t i = memo->pieces; i-- > now->first;) { /* neighbours mostly share an owner */
+        if (memo->piece[i].anchor == anchor) {
+            memo->piece[i].force_N += force_N;
+            return FW_OK;
+        }
+    }
+    FW_TRY(fw_grow((void **)&memo->piece, &memo->piece_capacity, memo->pieces + 1,
+                   sizeof *memo->piece, "loads of a batch", fault));
+    memo->piece[memo->pieces++] = (fw_load_piece){anchor, force_N};
+    return FW_OK;
+}
+
+/* Fills *found with the pieces of this cluster: known ones, or freshly summed. */
+static fw_status recall(const fw_setup *setup, const fw_sheet *sheet, const fw_tributary *tributary,
+                        uint32_t index, fw_load_memo *memo, const fw_load_entry **found,
+                        fw_fault *fault)
+{
+    const fw_cluster *cluster = &sheet->peel.cluster[index];
+    const fw_load_entry wanted = {
+        cluster->solution, cluster->x0,
+        cluster->y0,       fw_tributary_version(tributary, cluster->first_region),
+        memo->pieces,      0};
+    for (size_t i = memo->entries; i-- > 0;) {
+        *found = &memo->entry[i];
+        if ((*found)->solution == wanted.solution && (*found)->version == wanted.version &&
+            (*found)->x0 == wanted.x0 && (*found)->y0 == wanted.y0)
+            return FW_OK;
+    }
+    recorder now = {memo, memo->pieces};
+    const fw_load_taker taker = {record_anchor, NULL, &now};
+    FW_TRY(hand_out_cells(setup, sheet, tributary, index, &taker, fault));
+    FW_TRY(fw_grow((void **)&memo->entry, &memo->entry_capacity, memo->entries + 1,
+                   sizeof *memo->entry, "loads of a batch", fault));
+    memo->entry[memo->entries] = wanted;
+    memo->entry[memo->entries].count = memo->pieces - wanted.first;
+    *found = &memo->entry[memo->entries++];
+    return FW_OK;
+}
+
+/* A part region alone gives its loads through the memo, so that the sums are formed in the same
+ * order whether it is known or new. */
+static fw_status hand_out_solved(const fw_setup *setup, const fw_sheet *sheet,
+                                 const fw_tributary *tributary, uint32_t index, fw_load_memo *memo,
+                                 const fw_load_taker *taker, fw_fault *fault)
+{
+    const fw_cluster *cluster = &sheet->peel.cluster[index];
+    const fw_load_entry *entry = NULL;
+    if (cluster->region_count > 1 || sheet->posts_only[cluster->first_region])
+        return hand_out_cells(setup, sheet, tributary, index, taker, fault);
+    FW_TRY(recall(setup, sheet, tributary, index, memo, &entry, fault));
+    for (size_t i = 0; i < entry->count; i++) {
+        const fw_load_piece *piece = &memo->piece[entry->first + i];
+        FW_TRY(taker->anchor(taker->context, piece->anchor, piece->force_N, fault));
     }
     return FW_OK;
 }
@@ -131,8 +264,8 @@ static bool has_cavities(const fw_peel *peel)
 }
 
 fw_status fw_loads_hand_out(const fw_setup *setup, const fw_sheet *sheet,
-                            const fw_tributary *tributary, const fw_load_taker *taker,
-                            fw_fault *fault)
+                            const fw_tributary *tributary, fw_load_memo *memo,
+                            const fw_load_taker *taker, fw_fault *fault)
 {
     for (uint32_t c = 0; c < sheet->peel.count; c++) {
         const fw_cluster *cluster = &sheet->peel.cluster[c];
@@ -142,7 +275,7 @@ fw_status fw_loads_hand_out(const fw_setup *setup, const fw_sheet *sheet,
         if (cluster->solution == NULL)
             FW_TRY(hand_out_at(sheet, tributary, whole, cluster->force_N, taker, fault));
         else
-            FW_TRY(hand_out_cells(setup, sheet, tributary, c, taker, fault));
+            FW_TRY(hand_out_solved(setup, sheet, tributary, c, memo, taker, fault));
     }
     return has_cavities(&sheet->peel) ? hand_out_cavities(setup, sheet, tributary, taker, fault)
                                       : FW_OK;

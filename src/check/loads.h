@@ -14,10 +14,34 @@ typedef struct fw_load_taker {
     void *context;
 } fw_load_taker;
 
+/* What was handed out of a cluster that is likely to come again in the next layer: walls repeat. */
+typedef struct fw_load_entry {
+    const fw_film_solution *solution;
+    int32_t x0, y0;
+    uint64_t version;    /* of the region's owners */
+    size_t first, count; /* in fw_load_memo.piece */
+} fw_load_entry;
+
+typedef struct fw_load_piece {
+    int32_t anchor;
+    double force_N;
+} fw_load_piece;
+
+/* Keeps what was handed out since it was forgotten. A zeroed struct is valid and empty; free entry
+ * and piece with free(). */
+typedef struct fw_load_memo {
+    fw_load_entry *entry;
+    fw_load_piece *piece;
+    size_t entries, pieces, entry_capacity, piece_capacity;
+} fw_load_memo;
+
+/* To be called when the film memo may have freed solutions: between batches. */
+void fw_load_memo_forget(fw_load_memo *memo);
+
 /* Hands out sheet->peel: every film cell goes to the owner of its place, a cavity's suction to the
  * owners of the walls round it, regions of posts alone to those posts. */
 fw_status fw_loads_hand_out(const fw_setup *setup, const fw_sheet *sheet,
-                            const fw_tributary *tributary, const fw_load_taker *taker,
-                            fw_fault *fault);
+                            const fw_tributary *tributary, fw_load_memo *memo,
+                            const fw_load_taker *taker, fw_fault *fault);
 
 #endif

@@ -1,7 +1,6 @@
 #include "check/share.h"
 
 #include "check/contacts.h"
-#include "check/loads.h"
 #include "check/sections.h"
 #include "fault/memory.h"
 
@@ -28,6 +27,8 @@ void fw_share_close(fw_share *share)
     free(share->group);
     free(share->touched);
     free(share->waiting);
+    free(share->loads.entry);
+    free(share->loads.piece);
     *share = (fw_share){0};
 }
 
@@ -216,6 +217,11 @@ static fw_status step_tributary(fw_share *share, fw_sheet *sheet, const fw_sheet
     return status;
 }
 
+void fw_share_new_batch(fw_share *share)
+{
+    fw_load_memo_forget(&share->loads);
+}
+
 fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before,
                         fw_layer_row *rows, fw_fault *fault)
 {
@@ -228,7 +234,7 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
     FW_TRY(step_tributary(share, sheet, before, fault));
     taking now = {share, sheet->layer};
     const fw_load_taker taker = {take_anchor, take_post, &now};
-    FW_TRY(fw_loads_hand_out(share->setup, sheet, share->tributary, &taker, fault));
+    FW_TRY(fw_loads_hand_out(share->setup, sheet, share->tributary, &share->loads, &taker, fault));
     FW_TRY(book_posts(share, sheet->layer, rows, fault));
     book_plates(share, sheet->layer, rows);
     return FW_OK;

@@ -3,6 +3,7 @@
 #ifndef FW_CHECK_SHARE_H
 #define FW_CHECK_SHARE_H
 
+#include "check/loads.h"
 #include "check/sheet.h"
 #include "posts/margins.h"
 #include "posts/tributary.h"
@@ -58,6 +59,7 @@ typedef struct fw_share {
     size_t group_count, group_capacity;
     int32_t *touched; /* posts that the layer at hand loads */
     size_t touched_count, touched_capacity;
+    fw_load_memo loads; /* of the batch at hand */
     fw_waiting *waiting;
     size_t waiting_count, waiting_capacity;
 } fw_share;
@@ -66,6 +68,9 @@ typedef struct fw_share {
  */
 fw_status fw_share_open(const fw_setup *setup, const fw_posts *posts, const fw_stamp_plan *plan,
                         fw_share *out, fw_fault *fault);
+
+/* A new batch begins: solutions of earlier ones may be gone. */
+void fw_share_new_batch(fw_share *share);
 
 /* Takes the next layer, after its peel loads are known. rows [layers] gets worst_margin, also of
  * earlier layers whose posts' contacts become known only now. */

@@ -473,12 +473,40 @@ static fw_status settle_cover(solver *s, fw_tips *centres, int32_t even, fw_faul
     return take_out(s, centres, 0, fault);
 }
 
+enum { VARIANTS = 32, MOST_TRIED = 8, TRIED_TIPS = 600 };
+
+typedef struct start {
+    size_t count;
+    int32_t variant;
+} start;
+
+static int compare_starts(const void *one, const void *two)
+{
+    const start *p = one, *q = two;
+    if (p->count != q->count)
+        return p->count < q->count ? -1 : 1;
+    return p->variant < q->variant ? -1 : p->variant > q->variant;
+}
+
+/* The starts with the fewest centres are settled, and the best result is kept: on a small face the
+ * rim decides, and no pattern fits it best by its looks. On a large one the rim matters little, and
+ * only the first is tried. */
 static fw_status best_start(solver *s, fw_tips *trial, fw_tips *best, fw_fault *fault)
 {
-    for (int32_t variant = 0; variant < 32; variant++) {
+    start order[VARIANTS];
+    for (int32_t variant = 0; variant < VARIANTS; variant++) {
         pattern p = make_pattern(s->task, variant);
         FW_TRY(start_from(s, &p, trial, fault));
-        if (variant == 0 || trial->count < best->count)
+        order[variant] = (start){trial->count, variant};
+    }
+    qsort(order, VARIANTS, sizeof *order, compare_starts);
+    const size_t affordable = 1 + TRIED_TIPS / (order[0].count + 1);
+    const size_t tried = affordable < MOST_TRIED ? affordable : MOST_TRIED;
+    for (size_t n = 0; n < tried; n++) {
+        pattern p = make_pattern(s->task, order[n].variant);
+        FW_TRY(start_from(s, &p, trial, fault));
+        FW_TRY(settle_cover(s, trial, 3, fault));
+        if (n == 0 || trial->count < best->count)
             FW_TRY(fw_tips_copy(trial, best, fault));
     }
     return FW_OK;
@@ -506,7 +534,6 @@ static fw_status improve(solver *s, fw_tips *trial, fw_tips *best, fw_fault *fau
 static fw_status solve(solver *s, fw_tips *trial, fw_tips *best, fw_fault *fault)
 {
     FW_TRY(best_start(s, trial, best, fault));
-    FW_TRY(settle_cover(s, best, 3, fault));
     return improve(s, trial, best, fault);
 }
 

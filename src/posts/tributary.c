@@ -51,11 +51,11 @@ static int64_t nanometres(double mm)
     return (int64_t)llround(mm * 1e6);
 }
 
-/* A cell side of about 0.4 mm in pixels: well under the pitch of tips, coarse enough to be cheap.
+/* A cell side of about 0.2 mm in pixels: well under the pitch of tips, coarse enough to be cheap.
  */
 static int32_t pixels_in_cell(double pixel_mm)
 {
-    return pixel_mm >= 0.4 ? 1 : (int32_t)fmin(round(0.4 / pixel_mm), 65535);
+    return pixel_mm >= 0.2 ? 1 : (int32_t)fmin(round(0.2 / pixel_mm), 65535);
 }
 
 static int32_t cells_over(int32_t pixels, int32_t cell)
@@ -237,12 +237,24 @@ static fw_status offer_all(fw_tributary *field, fw_fault *fault)
     return FW_OK;
 }
 
-/* The contact's nodes start at the anchor's own way to the plate; those that gain by it join the
- * heap. */
+/* From the centre of cell (c, row y's) to the nearest pixel centre of a run in row y, in nm; the
+ * pixel that the centre lies in is 0 away. */
+static int64_t to_run(const fw_tributary *field, int32_t c, fw_run run, int32_t y)
+{
+    const double kx = field->cells.kx, ky = field->cells.ky;
+    const double x = (c + 0.5) * kx - 0.5, row = (floor(y / ky) + 0.5) * ky - 0.5;
+    const double dx =
+        fmax(fmax(run.x0 - x, x - (run.x1 - 1)) - 0.5, 0) * ((double)field->right / kx);
+    const double dy = fmax(fabs(y - row) - 0.5, 0) * ((double)field->down / ky);
+    return llround(hypot(dx, dy));
+}
+
+/* The contact's nodes start at the anchor's own way to the plate and what is missing to the
+ * contact; those that gain by it join the heap. */
 static fw_status place_anchor(fw_tributary *field, fw_anchor_contact anchor, fw_fault *fault)
 {
     const fw_runs *contact = anchor.contact;
-    const node at_contact = {llround(anchor.start_mm * 1e6) - field->risen, anchor.anchor};
+    const int64_t start = llround(anchor.start_mm * 1e6) - field->risen;
     for (int32_t y = 0; y < contact->height; y++) {
         for (uint32_t i = contact->row[y]; i < contact->row[y + 1]; i++) {
             const fw_run run = contact->run[i];
@@ -253,7 +265,8 @@ static fw_status place_anchor(fw_tributary *field, fw_anchor_contact anchor, fw_
             const uint32_t span = fw_spans_find(&field->now.spans, y / field->cells.ky,
                                                 field->regions->label[found], c0);
             for (int32_t c = c0; c <= c1 && c < field->now.spans.span[span].c1; c++)
-                FW_TRY(offer(field, span, c, at_contact, fault));
+                FW_TRY(offer(field, span, c,
+                             (node){start + to_run(field, c, run, y), anchor.anchor}, fault));
         }
     }
     return FW_OK;

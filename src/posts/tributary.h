@@ -3,10 +3,11 @@
  * anchor itself. (Without the anchor's own length, a tip high up on a tall part would draw the load
  * of all that stands straight on the plate beside it.)
  *
- * The plane is cut into square-ish cells of kx by ky pixels (a side of about 0.4 mm, at least one
+ * The plane is cut into square-ish cells of kx by ky pixels (a side of about 0.2 mm, at least one
  * pixel). A node is (region of the solid, cell in which it has pixels), so that neighbouring
  * regions do not leak into each other. A node's length L_n(r, c) in mm is the smallest of
- *     the anchor's own way to the plate   where a contact pixel of an anchor lies in it,
+ *     the anchor's own way to the plate   where a contact pixel of an anchor lies in it, and the
+ *                                         distance from the cell's centre to that pixel,
  *     L_(n-1)(r', c) + t_n                for regions r' of the layer before that share a pixel
  *                                         with r in cell c,
  *     L_n(r, c') + |c - c'|               for the 8 cells c' around c that are nodes of the

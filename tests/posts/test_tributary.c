@@ -97,7 +97,7 @@ static void box(uint8_t *map, int width, int x0, int y0, int x1, int y1, uint8_t
     }
 }
 
-/* 0.05 mm pixels: cells of 8 x 8. */
+/* 0.05 mm pixels: cells of 4 x 4. */
 static void two_posts_split_a_beam_in_the_middle(void **state)
 {
     (void)state;
@@ -106,8 +106,8 @@ static void two_posts_split_a_beam_in_the_middle(void **state)
     scene s = scene_new(W, H, 0.05, 0.05);
     int32_t kx, ky;
     fw_tributary_cell(s.field, &kx, &ky);
-    assert_int_equal(kx, 8);
-    assert_int_equal(ky, 8);
+    assert_int_equal(kx, 4);
+    assert_int_equal(ky, 4);
     memset(map, SOLID, sizeof map);
     box(map, W, 0, 0, 8, H, ANCHOR + 1);
     box(map, W, W - 8, 0, W, H, ANCHOR);
@@ -117,8 +117,8 @@ static void two_posts_split_a_beam_in_the_middle(void **state)
         advance(&s, map, 0.05, false);
     for (int x = 0; x < W; x++)
         assert_int_equal(owner(&s, x, 3), x < W / 2 ? 1 : 0);
-    /* Four cells of 0.4 mm and five layers of 0.05 mm. */
-    assert_true(fabs(fw_tributary_length(s.field, 0, 39, 0) - (4 * 0.4 + 5 * 0.05)) < 1e-9);
+    /* Eight cells of 0.2 mm and five layers of 0.05 mm. */
+    assert_true(fabs(fw_tributary_length(s.field, 0, 39, 0) - (8 * 0.2 + 5 * 0.05)) < 1e-9);
     scene_free(&s);
 }
 
@@ -126,7 +126,7 @@ static void two_posts_split_a_beam_in_the_middle(void **state)
 static void ties_go_to_the_smaller_anchor(void **state)
 {
     (void)state;
-    enum { W = 72, H = 8 };
+    enum { W = 76, H = 8 };
     for (int swap = 0; swap < 2; swap++) {
         uint8_t map[W * H];
         scene s = scene_new(W, H, 0.05, 0.05);
@@ -139,6 +139,49 @@ static void ties_go_to_the_smaller_anchor(void **state)
         assert_int_equal(owner(&s, 44, 0), 1 - swap);
         scene_free(&s);
     }
+}
+
+/* A contact that only touches a cell starts it at the distance from the cell's centre, less half a
+ * pixel: 0.05 mm pixels, cell centre at 0.10 mm, contact pixel centre at 0.175 mm. */
+static void contact_at_the_rim_of_a_cell(void **state)
+{
+    (void)state;
+    enum { W = 16, H = 4 };
+    uint8_t map[W * H];
+    scene s = scene_new(W, H, 0.05, 0.05);
+    memset(map, SOLID, sizeof map);
+    box(map, W, 3, 0, 4, H, ANCHOR);
+    advance(&s, map, 0.05, false);
+    assert_true(fabs(fw_tributary_length(s.field, 0, 0, 0) - (0.075 - 0.025)) < 1e-9);
+    assert_true(fabs(fw_tributary_length(s.field, 0, 5, 0) - (0.2 + 0.05)) < 1e-9);
+    scene_free(&s);
+}
+
+/* A post counts with its own length: the tip high up is near, the plate is on the shorter way. */
+static void an_anchors_own_way_counts(void **state)
+{
+    (void)state;
+    enum { W = 40, H = 4 };
+    uint8_t map[W * H];
+    scene s = scene_new(W, H, 0.05, 0.05);
+    fw_runs plate = {0}, tip = {0};
+    memset(map, SOLID, sizeof map);
+    box(map, W, 0, 0, 4, H, ANCHOR);
+    runs_of(map, ANCHOR, &s, &plate);
+    box(map, W, 36, 0, 40, H, ANCHOR + 1);
+    runs_of(map, ANCHOR + 1, &s, &tip);
+    memset(map, SOLID, sizeof map);
+    advance(&s, map, 0.05, false);
+    assert_int_equal(fw_tributary_add_anchor(s.field, (fw_anchor_contact){0, &plate, 0}, NULL),
+                     FW_OK);
+    assert_int_equal(fw_tributary_add_anchor(s.field, (fw_anchor_contact){1, &tip, 1.0}, NULL),
+                     FW_OK);
+    assert_int_equal(owner(&s, 26, 0),
+                     0); /* 1.2 mm from the plate's contact, 0.4 + 1.0 from the tip */
+    assert_int_equal(owner(&s, 37, 0), 1);
+    fw_runs_free(&plate);
+    fw_runs_free(&tip);
+    scene_free(&s);
 }
 
 static void wall_with_one_anchor(void **state)
@@ -506,6 +549,8 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(two_posts_split_a_beam_in_the_middle),
         cmocka_unit_test(ties_go_to_the_smaller_anchor),
+        cmocka_unit_test(contact_at_the_rim_of_a_cell),
+        cmocka_unit_test(an_anchors_own_way_counts),
         cmocka_unit_test(wall_with_one_anchor),
         cmocka_unit_test(round_a_slot_and_not_across_it),
         cmocka_unit_test(neighbouring_regions_do_not_leak),
