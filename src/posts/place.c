@@ -1,8 +1,9 @@
-/* Contents: a layer's ground; where a tip may stand; the grid of one region's exposed face;
+/* Contents: where a tip may stand; the grid of one region's exposed face;
  * covering it; farthest first for what the grid missed; what is missed in the end; public calls. */
 #include "posts/place.h"
 
 #include "fault/memory.h"
+#include "posts/place_ground.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -10,105 +11,24 @@
 
 static const char holder[] = "placing";
 
-/* ---- a layer ---- */
-
-typedef struct spot {
-    uint32_t region;
-    int32_t x, y;
-    double debt_mm;
-} spot;
-
-typedef struct ground {
-    const fw_place_rules *rules;
-    const fw_screen *screen;
-    fw_carried *field;
-    const fw_runs *now, *fresh;
-    const fw_regions *regions;
-    uint8_t *held;
-    fw_place_possible possible;
-    void *context;
-    fw_tips *out;
-    fw_runs whole;  /* of fresh: the whole smallest tip lies on fresh */
-    fw_runs inside; /* of fresh: the whole smallest tip lies on the layer */
-    spot *over;     /* [over_count] pixels over the reach */
-    size_t over_count, over_capacity;
-    int32_t block_px[2]; /* blocks in which pixels are given up together */
-    int32_t blocks[2];
-    uint8_t *block; /* [blocks[1]][blocks[0]] */
-} ground;
-
 enum { BLOCK_BUSY = 1, BLOCK_GIVEN_UP = 2 };
-
-/* out = pixels of `of` from whose centre a disc of the tip's radius stays on `base`. */
-static fw_status erode(const ground *g, const fw_runs *base, const fw_runs *of, fw_runs *out,
-                       fw_fault *fault)
-{
-    fw_runs not_base = {0}, near = {0};
-    double radius = 0.5 * g->rules->tip_mm;
-    fw_status status = fw_runs_complement(base, &not_base, fault);
-    if (status == FW_OK)
-        status = fw_runs_dilate(&not_base, radius / g->screen->px_mm, radius / g->screen->py_mm,
-                                &near, fault);
-    if (status == FW_OK)
-        status = fw_runs_subtract(of, &near, out, fault);
-    fw_runs_free(&not_base);
-    fw_runs_free(&near);
-    return status;
-}
-
-static int32_t step_px(double mm, double pixel_mm)
-{
-    return (int32_t)fmax(1.0, fmin(1 << 20, floor(mm / pixel_mm + 1e-9)));
-}
-
-static fw_status open_ground(ground *g, fw_fault *fault)
-{
-    FW_TRY(erode(g, g->fresh, g->fresh, &g->whole, fault));
-    FW_TRY(erode(g, g->now, g->fresh, &g->inside, fault));
-    double sixth = g->rules->reach_mm / 6.0;
-    g->block_px[0] = step_px(sixth, g->screen->px_mm);
-    g->block_px[1] = step_px(sixth, g->screen->py_mm);
-    g->blocks[0] = g->now->width / g->block_px[0] + 1;
-    g->blocks[1] = g->now->height / g->block_px[1] + 1;
-    return fw_allocate((void **)&g->block, (size_t)g->blocks[0] * (size_t)g->blocks[1], 1, holder,
-                       fault);
-}
-
-static void close_ground(ground *g)
-{
-    fw_runs_free(&g->whole);
-    fw_runs_free(&g->inside);
-    free(g->over);
-    free(g->block);
-}
-
-static bool has(const fw_runs *set, int32_t x, int32_t y)
-{
-    return fw_runs_find(set, x, y) != UINT32_MAX;
-}
-
-static uint32_t region_at(const ground *g, int32_t x, int32_t y)
-{
-    uint32_t run = fw_runs_find(g->now, x, y);
-    return run == UINT32_MAX ? UINT32_MAX : g->regions->label[run];
-}
 
 /* ---- where a tip may stand ---- */
 
 /* How well a tip fits the face, whether or not it can be routed. */
-static fw_stand fit_at(const ground *g, uint32_t region, int32_t x, int32_t y)
+static fw_stand fit_at(const fw_place_ground *g, uint32_t region, int32_t x, int32_t y)
 {
-    if (region_at(g, x, y) != region || !has(g->fresh, x, y))
+    if (fw_place_region_at(g, x, y) != region || !fw_place_has(g->fresh, x, y))
         return FW_STAND_NOT;
     double radius = 0.5 * g->rules->tip_mm, px = g->screen->px_mm, py = g->screen->py_mm;
     bool in_image = (x + 0.5) * px >= radius && (g->now->width - x - 0.5) * px >= radius &&
                     (y + 0.5) * py >= radius && (g->now->height - y - 0.5) * py >= radius;
-    if (in_image && has(&g->whole, x, y))
+    if (in_image && fw_place_has(&g->whole, x, y))
         return FW_STAND_WHOLE;
-    return g->held[region] || has(&g->inside, x, y) ? FW_STAND_EDGE : FW_STAND_NOT;
+    return g->held[region] || fw_place_has(&g->inside, x, y) ? FW_STAND_EDGE : FW_STAND_NOT;
 }
 
-static fw_stand stand_at(const ground *g, uint32_t region, double x_mm, double y_mm)
+static fw_stand stand_at(const fw_place_ground *g, uint32_t region, double x_mm, double y_mm)
 {
     int32_t x = (int32_t)floor(x_mm / g->screen->px_mm),
             y = (int32_t)floor(y_mm / g->screen->py_mm);
@@ -117,13 +37,8 @@ static fw_stand stand_at(const ground *g, uint32_t region, double x_mm, double y
     return routed ? fit : FW_STAND_NOT;
 }
 
-static double micrometres(double mm)
-{
-    return round(mm * 1000.0) / 1000.0;
-}
-
 /* Adds a tip to the list and its contact to the field. */
-static fw_status add_tip(ground *g, uint32_t region, fw_tip tip, fw_fault *fault)
+static fw_status add_tip(fw_place_ground *g, uint32_t region, fw_tip tip, fw_fault *fault)
 {
     fw_disc disc = {tip.x_mm, tip.y_mm, g->rules->tip_mm};
     fw_runs foot = {0}, contact = {0};
@@ -140,12 +55,8 @@ static fw_status add_tip(ground *g, uint32_t region, fw_tip tip, fw_fault *fault
 
 /* ---- the grid of one region's exposed face ---- */
 
-typedef struct box {
-    int32_t x0, y0, x1, y1; /* px, half-open */
-} box;
-
 typedef struct grid {
-    const ground *ground;
+    const fw_place_ground *ground;
     uint32_t region;
     int32_t x0, y0, sx, sy; /* px of node (0, 0), px between nodes */
     double x_mm, y_mm;      /* of node (0, 0) */
@@ -156,17 +67,18 @@ typedef struct grid {
 static fw_stand grid_stand(void *context, double x_mm, double y_mm)
 {
     const grid *r = context;
-    return stand_at(r->ground, r->region, micrometres(r->x_mm + x_mm), micrometres(r->y_mm + y_mm));
+    return stand_at(r->ground, r->region, fw_place_micrometres(r->x_mm + x_mm),
+                    fw_place_micrometres(r->y_mm + y_mm));
 }
 
-static bool exposed(const ground *g, uint32_t region, int32_t x, int32_t y)
+static bool exposed(const fw_place_ground *g, uint32_t region, int32_t x, int32_t y)
 {
     return !g->held[region] || fw_carried_at(g->field, x, y) > g->rules->reach_mm;
 }
 
 /* Mean thickness of a region in px, the smaller of along rows and along columns: pixels over the
  * number of pixels that begin a run, or have none of the region before them in their column. */
-static double thickness(const ground *g, uint32_t region)
+static double thickness(const fw_place_ground *g, uint32_t region)
 {
     const fw_region *r = &g->regions->region[region];
     double starts = 0.0, touching = 0.0;
@@ -191,10 +103,10 @@ static double thickness(const ground *g, uint32_t region)
 
 /* A sixth of the reach between nodes; less where the region is thin or small, but at most
  * MOST_NODES. */
-static void choose_steps(grid *r, const box *b, double thick)
+static void choose_steps(grid *r, const fw_place_box *b, double thick)
 {
     enum { FEW_NODES = 3600, MOST_NODES = 1 << 22 };
-    const ground *g = r->ground;
+    const fw_place_ground *g = r->ground;
     double area = (double)(b->x1 - b->x0) * (double)(b->y1 - b->y0);
     r->sx = g->block_px[0];
     r->sy = g->block_px[1];
@@ -211,13 +123,13 @@ static void choose_steps(grid *r, const box *b, double thick)
 
 static void fill_flags(grid *r)
 {
-    const ground *g = r->ground;
+    const fw_place_ground *g = r->ground;
     for (int32_t b = 0; b < r->task.ny; b++) {
         int32_t y = r->y0 + b * r->sy;
         uint8_t *row = r->flags + (size_t)b * (size_t)r->task.nx;
         for (int32_t a = 0; a < r->task.nx; a++) {
             int32_t x = r->x0 + a * r->sx;
-            if (region_at(g, x, y) != r->region)
+            if (fw_place_region_at(g, x, y) != r->region)
                 continue;
             row[a] = FW_COVER_IN;
             if (exposed(g, r->region, x, y))
@@ -229,9 +141,9 @@ static void fill_flags(grid *r)
 /* Lays the nodes, sx by sy px apart, over *b. The radius is shortened by a quarter of the node
  * distance, for the pixels between nodes, and a two-hundredth of the reach, for the field's own
  * error; what that does not catch is left to farthest first. Caller frees grid->flags. */
-static fw_status open_grid(grid *r, const box *b, fw_fault *fault)
+static fw_status open_grid(grid *r, const fw_place_box *b, fw_fault *fault)
 {
-    const ground *g = r->ground;
+    const fw_place_ground *g = r->ground;
     r->x0 = b->x0 + (b->x1 - b->x0 - 1) % r->sx / 2;
     r->y0 = b->y0 + (b->y1 - b->y0 - 1) % r->sy / 2;
     r->x_mm = (r->x0 + 0.5) * g->screen->px_mm;
@@ -261,8 +173,8 @@ static void shift_tips(fw_tips *tips, double x_mm, double y_mm)
 
 /* Centres for one region in image mm: covered on a coarse grid, then refined on one four times as
  * fine. */
-static fw_status find_centres(const ground *g, uint32_t region, const box *b, fw_tips *centres,
-                              fw_fault *fault)
+static fw_status find_centres(const fw_place_ground *g, uint32_t region, const fw_place_box *b,
+                              fw_tips *centres, fw_fault *fault)
 {
     grid r = {.ground = g, .region = region};
     choose_steps(&r, b, thickness(g, region));
@@ -284,12 +196,14 @@ static fw_status find_centres(const ground *g, uint32_t region, const box *b, fw
 }
 
 /* Covers the exposed pixels of one region, which lie in *b. */
-static fw_status cover_region(ground *g, uint32_t region, const box *b, fw_fault *fault)
+static fw_status cover_region(fw_place_ground *g, uint32_t region, const fw_place_box *b,
+                              fw_fault *fault)
 {
     fw_tips centres = {0};
     fw_status status = find_centres(g, region, b, &centres, fault);
     for (size_t n = 0; status == FW_OK && n < centres.count; n++) {
-        fw_tip tip = {micrometres(centres.item[n].x_mm), micrometres(centres.item[n].y_mm)};
+        fw_tip tip = {fw_place_micrometres(centres.item[n].x_mm),
+                      fw_place_micrometres(centres.item[n].y_mm)};
         status = add_tip(g, region, tip, fault);
     }
     fw_tips_free(&centres);
@@ -301,37 +215,27 @@ static fw_status cover_region(ground *g, uint32_t region, const box *b, fw_fault
 static fw_status note_over(void *context, int32_t y, int32_t x0, int32_t x1, const double *value_mm,
                            fw_fault *fault)
 {
-    ground *g = context;
-    uint32_t region = region_at(g, x0, y);
+    fw_place_ground *g = context;
+    uint32_t region = fw_place_region_at(g, x0, y);
     FW_TRY(fw_grow((void **)&g->over, &g->over_capacity, g->over_count + (size_t)(x1 - x0),
                    sizeof *g->over, holder, fault));
     for (int32_t x = x0; x < x1; x++)
-        g->over[g->over_count++] = (spot){region, x, y, value_mm[x - x0]};
+        g->over[g->over_count++] = (fw_place_spot){region, x, y, value_mm[x - x0]};
     return FW_OK;
 }
 
 /* Lists the pixels over the reach in raster order. */
-static fw_status list_over(ground *g, fw_fault *fault)
+static fw_status list_over(fw_place_ground *g, fw_fault *fault)
 {
     g->over_count = 0;
     return fw_carried_visit(g->field, g->rules->reach_mm, note_over, g, fault);
 }
 
-static void grow_box(box *b, int32_t x, int32_t y)
-{
-    if (b->x1 == 0)
-        *b = (box){x, y, x + 1, y + 1};
-    b->x0 = x < b->x0 ? x : b->x0;
-    b->y0 = y < b->y0 ? y : b->y0;
-    b->x1 = x >= b->x1 ? x + 1 : b->x1;
-    b->y1 = y >= b->y1 ? y + 1 : b->y1;
-}
-
 /* Wider by the reach, within the region: ways to what is exposed may lead round it. */
-static box widen(const ground *g, const box *b, const fw_region *r)
+static fw_place_box widen(const fw_place_ground *g, const fw_place_box *b, const fw_region *r)
 {
     int32_t across = 6 * g->block_px[0] + 6, along = 6 * g->block_px[1] + 6;
-    box w = {b->x0 - across, b->y0 - along, b->x1 + across, b->y1 + along};
+    fw_place_box w = {b->x0 - across, b->y0 - along, b->x1 + across, b->y1 + along};
     w.x0 = w.x0 < r->x0 ? r->x0 : w.x0;
     w.y0 = w.y0 < r->y0 ? r->y0 : w.y0;
     w.x1 = w.x1 > r->x1 ? r->x1 : w.x1;
@@ -340,7 +244,7 @@ static box widen(const ground *g, const box *b, const fw_region *r)
 }
 
 /* True when some pixel of an unheld region has room for the whole smallest tip. */
-static bool has_room(const ground *g, uint32_t region)
+static bool has_room(const fw_place_ground *g, uint32_t region)
 {
     const fw_region *r = &g->regions->region[region];
     for (int32_t y = r->y0; y < r->y1; y++)
@@ -352,31 +256,31 @@ static bool has_room(const ground *g, uint32_t region)
 }
 
 /* For a face that the grid has no node on: the first place where a tip may stand. */
-static fw_status hold_anywhere(ground *g, uint32_t region, fw_fault *fault)
+static fw_status hold_anywhere(fw_place_ground *g, uint32_t region, fw_fault *fault)
 {
     const fw_region *r = &g->regions->region[region];
     for (int32_t y = r->y0; y < r->y1; y++)
         for (uint32_t n = g->inside.row[y]; n < g->inside.row[y + 1]; n++) {
             int32_t x = (g->inside.run[n].x0 + g->inside.run[n].x1) / 2;
-            fw_tip tip = {micrometres((x + 0.5) * g->screen->px_mm),
-                          micrometres((y + 0.5) * g->screen->py_mm)};
+            fw_tip tip = {fw_place_micrometres((x + 0.5) * g->screen->px_mm),
+                          fw_place_micrometres((y + 0.5) * g->screen->py_mm)};
             if (stand_at(g, region, tip.x_mm, tip.y_mm) != FW_STAND_NOT)
                 return add_tip(g, region, tip, fault);
         }
     return FW_OK;
 }
 
-static fw_status cover_all(ground *g, fw_fault *fault)
+static fw_status cover_all(fw_place_ground *g, fw_fault *fault)
 {
-    box *exposed_box = NULL;
+    fw_place_box *exposed_box = NULL;
     FW_TRY(
         fw_allocate((void **)&exposed_box, g->regions->count, sizeof *exposed_box, holder, fault));
     for (size_t n = 0; n < g->over_count; n++)
-        grow_box(&exposed_box[g->over[n].region], g->over[n].x, g->over[n].y);
+        fw_place_grow_box(&exposed_box[g->over[n].region], g->over[n].x, g->over[n].y);
     fw_status status = FW_OK;
     for (uint32_t n = 0; status == FW_OK && n < g->regions->count; n++) {
         const fw_region *r = &g->regions->region[n];
-        box all = {r->x0, r->y0, r->x1, r->y1};
+        fw_place_box all = {r->x0, r->y0, r->x1, r->y1};
         if (!g->held[n] && has_room(g, n)) {
             status = cover_region(g, n, &all, fault);
             if (status == FW_OK && !g->held[n])
@@ -392,13 +296,13 @@ static fw_status cover_all(ground *g, fw_fault *fault)
 
 /* ---- farthest first ---- */
 
-static uint8_t *block_of(const ground *g, int32_t x, int32_t y)
+static uint8_t *block_of(const fw_place_ground *g, int32_t x, int32_t y)
 {
     return &g->block[(size_t)(y / g->block_px[1]) * (size_t)g->blocks[0] +
                      (size_t)(x / g->block_px[0])];
 }
 
-static void mark_round(ground *g, const fw_tip *tip)
+static void mark_round(fw_place_ground *g, const fw_tip *tip)
 {
     int32_t i = (int32_t)(tip->x_mm / g->screen->px_mm) / g->block_px[0];
     int32_t j = (int32_t)(tip->y_mm / g->screen->py_mm) / g->block_px[1];
@@ -410,7 +314,7 @@ static void mark_round(ground *g, const fw_tip *tip)
 
 static int compare_spots(const void *one, const void *two)
 {
-    const spot *p = one, *q = two;
+    const fw_place_spot *p = one, *q = two;
     if (p->debt_mm != q->debt_mm)
         return p->debt_mm > q->debt_mm ? -1 : 1;
     return p->y != q->y ? (p->y < q->y ? -1 : 1) : p->x < q->x ? -1 : p->x > q->x;
@@ -418,11 +322,11 @@ static int compare_spots(const void *one, const void *two)
 
 /* The standing place nearest to a spot and within the reach, on every pixel or (wide reach) every
  * n-th; one where the tip overhangs the face counts as a third of the reach farther. */
-static bool stand_near(const ground *g, const spot *s, fw_tip *out)
+static bool stand_near(const fw_place_ground *g, const fw_place_spot *s, fw_tip *out)
 {
     enum { RINGS = 12 };
     double px = g->screen->px_mm, py = g->screen->py_mm, reach = g->rules->reach_mm;
-    int32_t sx = step_px(reach / RINGS, px), sy = step_px(reach / RINGS, py);
+    int32_t sx = fw_place_step_px(reach / RINGS, px), sy = fw_place_step_px(reach / RINGS, py);
     int32_t na = (int32_t)(reach / (sx * px)), nb = (int32_t)(reach / (sy * py));
     double best = INFINITY;
     for (int32_t b = -nb; b <= nb; b++)
@@ -431,7 +335,8 @@ static bool stand_near(const ground *g, const spot *s, fw_tip *out)
             int32_t x = s->x + a * sx, y = s->y + b * sy;
             fw_stand fit = mm <= reach && mm < best ? fit_at(g, s->region, x, y) : FW_STAND_NOT;
             double score = mm + (fit == FW_STAND_WHOLE ? 0.0 : reach / 3.0);
-            fw_tip tip = {micrometres((x + 0.5) * px), micrometres((y + 0.5) * py)};
+            fw_tip tip = {fw_place_micrometres((x + 0.5) * px),
+                          fw_place_micrometres((y + 0.5) * py)};
             if (fit == FW_STAND_NOT || score >= best ||
                 stand_at(g, s->region, tip.x_mm, tip.y_mm) == FW_STAND_NOT)
                 continue;
@@ -443,7 +348,7 @@ static bool stand_near(const ground *g, const spot *s, fw_tip *out)
 
 /* One pass over the listed pixels, worst first: each gets a tip near it, unless one was just put
  * near it or its block was given up. */
-static fw_status pass_over(ground *g, bool *added, fw_fault *fault)
+static fw_status pass_over(fw_place_ground *g, bool *added, fw_fault *fault)
 {
     size_t blocks = (size_t)g->blocks[0] * (size_t)g->blocks[1];
     *added = false;
@@ -451,7 +356,7 @@ static fw_status pass_over(ground *g, bool *added, fw_fault *fault)
         g->block[n] &= (uint8_t)~BLOCK_BUSY;
     qsort(g->over, g->over_count, sizeof *g->over, compare_spots);
     for (size_t n = 0; n < g->over_count; n++) {
-        const spot *s = &g->over[n];
+        const fw_place_spot *s = &g->over[n];
         fw_tip tip;
         uint8_t *block = block_of(g, s->x, s->y);
         if (*block != 0)
@@ -466,7 +371,7 @@ static fw_status pass_over(ground *g, bool *added, fw_fault *fault)
     return FW_OK;
 }
 
-static fw_status add_leftovers(ground *g, fw_fault *fault)
+static fw_status add_leftovers(fw_place_ground *g, fw_fault *fault)
 {
     for (bool added = true; added;) {
         FW_TRY(list_over(g, fault));
@@ -492,7 +397,7 @@ static fw_status push_miss(fw_misses *misses, fw_miss miss, fw_fault *fault)
 }
 
 /* A tip would fit within the reach of the pixel, so that only the way to the plate is missing. */
-static bool fits_near(const ground *g, const fw_miss *m)
+static bool fits_near(const fw_place_ground *g, const fw_miss *m)
 {
     double px = g->screen->px_mm, py = g->screen->py_mm, reach = g->rules->reach_mm;
     int32_t na = (int32_t)(reach / px), nb = (int32_t)(reach / py);
@@ -504,12 +409,12 @@ static bool fits_near(const ground *g, const fw_miss *m)
     return false;
 }
 
-static fw_status report_missed(const ground *g, fw_misses *missed, fw_fault *fault)
+static fw_status report_missed(const fw_place_ground *g, fw_misses *missed, fw_fault *fault)
 {
     fw_miss *of = NULL;
     FW_TRY(fw_allocate((void **)&of, g->regions->count, sizeof *of, holder, fault));
     for (size_t n = 0; n < g->over_count; n++) {
-        const spot *s = &g->over[n];
+        const fw_place_spot *s = &g->over[n];
         fw_miss *m = &of[s->region];
         int64_t pixels = m->pixels + 1;
         if (m->pixels == 0 || s->debt_mm > m->debt_mm)
@@ -533,7 +438,7 @@ static fw_status report_missed(const ground *g, fw_misses *missed, fw_fault *fau
 
 /* ---- public ---- */
 
-static bool all_held(const ground *g)
+static bool all_held(const fw_place_ground *g)
 {
     for (uint32_t n = 0; n < g->regions->count; n++)
         if (!g->held[n])
@@ -541,12 +446,12 @@ static bool all_held(const ground *g)
     return true;
 }
 
-static fw_status place_on(ground *g, fw_misses *missed, fw_fault *fault)
+static fw_status place_on(fw_place_ground *g, fw_misses *missed, fw_fault *fault)
 {
     FW_TRY(list_over(g, fault));
     if (g->over_count == 0 && all_held(g))
         return FW_OK;
-    FW_TRY(open_ground(g, fault));
+    FW_TRY(fw_place_ground_open(g, fault));
     FW_TRY(cover_all(g, fault));
     FW_TRY(add_leftovers(g, fault));
     return report_missed(g, missed, fault);
@@ -557,123 +462,17 @@ fw_status fw_place_layer(const fw_place_rules *rules, fw_carried *field, const f
                          fw_place_possible possible, void *context, fw_tips *out, fw_misses *missed,
                          fw_fault *fault)
 {
-    ground g = {.rules = rules,
-                .screen = rules->screen,
-                .field = field,
-                .now = now,
-                .fresh = fresh,
-                .regions = regions,
-                .held = held,
-                .possible = possible,
-                .context = context,
-                .out = out};
+    fw_place_ground g = {.rules = rules,
+                         .screen = rules->screen,
+                         .field = field,
+                         .now = now,
+                         .fresh = fresh,
+                         .regions = regions,
+                         .held = held,
+                         .possible = possible,
+                         .context = context,
+                         .out = out};
     fw_status status = place_on(&g, missed, fault);
-    close_ground(&g);
-    return status;
-}
-
-/* ---- more tips round an overloaded one ---- */
-
-typedef struct area {
-    const ground *ground;
-    int32_t x0, y0, step_x, step_y;
-    double x_mm, y_mm; /* of node (0, 0) */
-} area;
-
-static fw_stand area_stand(void *context, double x_mm, double y_mm)
-{
-    const area *a = context;
-    const ground *g = a->ground;
-    fw_tip tip = {micrometres(a->x_mm + x_mm), micrometres(a->y_mm + y_mm)};
-    int32_t x = (int32_t)floor(tip.x_mm / g->screen->px_mm);
-    int32_t y = (int32_t)floor(tip.y_mm / g->screen->py_mm);
-    if (!has(g->fresh, x, y) ||
-        (g->possible != NULL && !g->possible(g->context, tip.x_mm, tip.y_mm)))
-        return FW_STAND_NOT;
-    return has(&g->whole, x, y) ? FW_STAND_WHOLE : FW_STAND_EDGE;
-}
-
-static box box_of(const fw_runs *set)
-{
-    box b = {0};
-    for (int32_t y = 0; y < set->height; y++)
-        for (uint32_t n = set->row[y]; n < set->row[y + 1]; n++) {
-            grow_box(&b, set->run[n].x0, y);
-            grow_box(&b, set->run[n].x1 - 1, y);
-        }
-    return b;
-}
-
-static fw_status open_area(area *a, const ground *g, fw_cover_task *task, uint8_t **flags,
-                           fw_fault *fault)
-{
-    enum { MOST_NODES = 10000 };
-    box b = box_of(g->fresh);
-    *a = (area){
-        g, b.x0, b.y0, 1, 1, (b.x0 + 0.5) * g->screen->px_mm, (b.y0 + 0.5) * g->screen->py_mm};
-    while ((double)(b.x1 - b.x0) / a->step_x * (b.y1 - b.y0) / a->step_y > MOST_NODES) {
-        a->step_x++;
-        a->step_y++;
-    }
-    *task = (fw_cover_task){.nx = (b.x1 - b.x0 - 1) / a->step_x + 1,
-                            .ny = (b.y1 - b.y0 - 1) / a->step_y + 1,
-                            .dx_mm = a->step_x * g->screen->px_mm,
-                            .dy_mm = a->step_y * g->screen->py_mm,
-                            .radius_mm = g->rules->reach_mm,
-                            .stand = area_stand,
-                            .context = a};
-    FW_TRY(fw_allocate((void **)flags, (size_t)task->nx * (size_t)task->ny, 1, holder, fault));
-    for (int32_t j = 0; j < task->ny; j++)
-        for (int32_t i = 0; i < task->nx; i++)
-            if (has(g->fresh, a->x0 + i * a->step_x, a->y0 + j * a->step_y))
-                (*flags)[(size_t)j * (size_t)task->nx + (size_t)i] = FW_COVER_IN | FW_COVER_NEED;
-    task->flags = *flags;
-    return FW_OK;
-}
-
-/* Grows all (existing tips first, then new ones) by up to `more`. */
-static fw_status share_area(const area *a, const fw_cover_task *task, const fw_tips *existing,
-                            size_t more, double pitch_mm, fw_tips *all, fw_fault *fault)
-{
-    enum { LLOYD_ROUNDS = 12 };
-    for (size_t n = 0; n < existing->count; n++) {
-        fw_tip tip = {existing->item[n].x_mm - a->x_mm, existing->item[n].y_mm - a->y_mm};
-        FW_TRY(fw_tips_push(all, tip, fault));
-    }
-    bool added = true;
-    for (size_t n = 0; n < more && added; n++)
-        FW_TRY(fw_cover_farthest(task, all, pitch_mm, &added, fault));
-    return fw_cover_spread(task, all, existing->count, pitch_mm, LLOYD_ROUNDS, fault);
-}
-
-fw_status fw_place_extra(const fw_place_rules *rules, const fw_runs *runs, const fw_tips *existing,
-                         size_t more, double pitch_mm, fw_place_possible possible, void *context,
-                         fw_tips *out, fw_fault *fault)
-{
-    ground g = {.rules = rules,
-                .screen = rules->screen,
-                .now = runs,
-                .fresh = runs,
-                .possible = possible,
-                .context = context};
-    if (runs->count == 0 || more == 0)
-        return FW_OK;
-    area a;
-    fw_cover_task task;
-    uint8_t *flags = NULL;
-    fw_tips all = {0};
-    fw_status status = erode(&g, runs, runs, &g.whole, fault);
-    if (status == FW_OK)
-        status = open_area(&a, &g, &task, &flags, fault);
-    if (status == FW_OK)
-        status = share_area(&a, &task, existing, more, pitch_mm, &all, fault);
-    for (size_t n = existing->count; status == FW_OK && n < all.count; n++) {
-        fw_tip tip = {micrometres(a.x_mm + all.item[n].x_mm),
-                      micrometres(a.y_mm + all.item[n].y_mm)};
-        status = fw_tips_push(out, tip, fault);
-    }
-    fw_tips_free(&all);
-    free(flags);
-    close_ground(&g);
+    fw_place_ground_close(&g);
     return status;
 }
