@@ -11,7 +11,7 @@
 
 /* What holds the body at a place of this layer, for the tributary share. */
 typedef struct fw_contact {
-    int32_t anchor; /* post index, or fw_plate_anchor(k) */
+    int32_t anchor; /* post index, or FW_PLATE_ANCHOR + k */
     fw_runs runs;   /* owned */
 } fw_contact;
 

@@ -12,10 +12,7 @@ static falsework_status recheck(const fw_arguments *arguments, fw_desk *desk,
     if (status == FALSEWORK_OK)
         status = falsework_recheck(desk->stack, desk->job, desk->posts, desk->raw, &options,
                                    &desk->report, fault);
-    if (status == FALSEWORK_OK && arguments->out != NULL)
-        status = falsework_report_publish(desk->report, desk->stack, desk->job, arguments->out,
-                                          arguments->replace, fault);
-    return status == FALSEWORK_OK ? fw_desk_print(arguments, desk, fault) : status;
+    return status == FALSEWORK_OK ? fw_desk_hand_out(arguments, desk, fault) : status;
 }
 
 static int run(const fw_arguments *arguments)

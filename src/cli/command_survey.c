@@ -9,10 +9,7 @@ static falsework_status survey(const fw_arguments *arguments, fw_desk *desk, fal
     const falsework_options options = fw_say_options(arguments, &desk->decodes);
     if (status == FALSEWORK_OK)
         status = falsework_survey(desk->stack, desk->job, &options, &desk->report, fault);
-    if (status == FALSEWORK_OK && arguments->out != NULL)
-        status = falsework_report_publish(desk->report, desk->stack, desk->job, arguments->out,
-                                          arguments->replace, fault);
-    return status == FALSEWORK_OK ? fw_desk_print(arguments, desk, fault) : status;
+    return status == FALSEWORK_OK ? fw_desk_hand_out(arguments, desk, fault) : status;
 }
 
 static int run(const fw_arguments *arguments)

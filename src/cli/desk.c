@@ -41,6 +41,18 @@ falsework_status fw_desk_print(const fw_arguments *arguments, const fw_desk *des
                            : falsework_report_write_summary(desk->report, fw_say_out, NULL, fault);
 }
 
+falsework_status fw_desk_hand_out(const fw_arguments *arguments, const fw_desk *desk,
+                                  falsework_fault *fault)
+{
+    if (arguments->out != NULL) {
+        const falsework_status status = falsework_report_publish(
+            desk->report, desk->stack, desk->job, arguments->out, arguments->replace, fault);
+        if (status != FALSEWORK_OK)
+            return status;
+    }
+    return fw_desk_print(arguments, desk, fault);
+}
+
 void fw_desk_close(fw_desk *desk)
 {
     falsework_report_close(desk->report);

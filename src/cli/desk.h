@@ -22,6 +22,10 @@ falsework_status fw_desk_open(const fw_arguments *arguments, fw_desk *out, false
 /* Prints the report as --json or as a summary, and the counters of --verbose to stderr. */
 falsework_status fw_desk_print(const fw_arguments *arguments, const fw_desk *desk,
                                falsework_fault *fault);
+
+/* The report of a pass that writes no stack: into --out if that was given, then printed. */
+falsework_status fw_desk_hand_out(const fw_arguments *arguments, const fw_desk *desk,
+                                  falsework_fault *fault);
 void fw_desk_close(fw_desk *desk);
 
 #endif

@@ -21,7 +21,8 @@ bare=$work/debian
 mirror=$(apt-get indextargets --format '$(REPO_URI)' 'Created-By: Packages' 'Codename: bookworm' |
     head -n 1)
 echo "== debootstrap"
-if ! debootstrap --variant=minbase bookworm "$bare" "${mirror:-http://deb.debian.org/debian}" \
+# Without a known mirror debootstrap takes its own default.
+if ! debootstrap --variant=minbase bookworm "$bare" ${mirror:+"$mirror"} \
     >"$work/log" 2>&1; then
     tail -n 20 "$work/log" >&2
     echo 'bare_debian.sh: debootstrap failed, see above, check the network and the mirror' >&2
