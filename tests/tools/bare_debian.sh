@@ -47,7 +47,7 @@ copy "$HOME/.npmrc"
 certificates=/etc/ssl/certs/ca-certificates.crt
 kept=/etc/ssl/caller.crt # installing ca-certificates writes the usual file anew
 if [ -e "$certificates" ]; then
-    cp -L "$certificates" "$bare$kept"
+    mkdir -p "$bare/etc/ssl" && cp -L "$certificates" "$bare$kept"
     echo "Acquire::https::CAInfo \"$kept\";" >"$bare/etc/apt/apt.conf.d/90caller"
 fi
 
