@@ -21,7 +21,7 @@ if ! { cmake -S "$root" -B "$build" -G Ninja -DCMAKE_BUILD_TYPE=Release &&
 fi
 
 rm -rf "$raw"
-"$build/falsework-part" manifold "$raw"
+"$build/models/parts/falsework-part" manifold "$raw"
 
 replace=
 [ ! -e "$out" ] || replace=--replace

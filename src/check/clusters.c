@@ -146,6 +146,7 @@ static fw_status number_cavities(const fw_setup *setup, const fw_slice *slice,
             continue;
         }
         out->of_void[v] = out->of_region[out->of_void[v]];
+        out->cluster[out->of_void[v]].sealed = true;
         const double area = (double)voids->region[v].pixels * setup->px_mm * setup->py_mm;
         if (area < FW_SMALL_CAVITY_MM2)
             continue;

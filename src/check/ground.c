@@ -26,6 +26,7 @@ void fw_ground_close(fw_ground *ground)
     fw_bodies_free(&ground->voids);
     fw_carried_free(ground->field);
     free(ground->touches_post);
+    free(ground->large);
     free(ground->pending);
     free(ground->peak);
     *ground = (fw_ground){0};
@@ -74,6 +75,25 @@ fw_status fw_ground_holds_tip(const fw_setup *setup, const fw_runs *set, const f
     return status;
 }
 
+/* Whether some region of the body, up to this one, could hold a tip. Once it is known it stays, so
+ * that a large body is measured once and not in every layer. */
+static fw_status is_large(fw_ground *ground, const fw_sheet *sheet, uint32_t region, bool *large,
+                          fw_fault *fault)
+{
+    const size_t before = ground->large_capacity;
+    const uint32_t body = fw_bodies_of_region(&ground->bodies, region);
+    FW_TRY(fw_grow((void **)&ground->large, &ground->large_capacity, ground->bodies.count,
+                   sizeof *ground->large, holder, fault));
+    memset(ground->large + before, 0, ground->large_capacity - before);
+    *large = ground->large[body] != 0;
+    if (*large)
+        return FW_OK;
+    FW_TRY(fw_ground_holds_tip(ground->setup, &sheet->slice.intended, &sheet->slice.regions, region,
+                               large, fault));
+    ground->large[body] = *large;
+    return FW_OK;
+}
+
 /* ---- findings --------------------------------------------------------------------------- */
 
 static fw_finding of_region(const fw_setup *setup, fw_kind kind, uint64_t group, int32_t layer,
@@ -98,8 +118,7 @@ static fw_status note_onset(fw_ground *ground, const fw_sheet *sheet, uint32_t r
 {
     bool holds = true;
     const fw_slice *slice = &sheet->slice;
-    FW_TRY(fw_ground_holds_tip(ground->setup, &slice->intended, &slice->regions, region, &holds,
-                               fault));
+    FW_TRY(is_large(ground, sheet, region, &holds, fault));
     const uint32_t body = fw_bodies_of_region(&ground->bodies, region);
     fw_finding finding =
         of_region(ground->setup, FW_ONSET, body, sheet->layer, &slice->regions.region[region]);
@@ -169,10 +188,9 @@ static fw_status count_adrift(fw_ground *ground, const fw_sheet *sheet, fw_layer
         row->adrift_px += regions->region[r].pixels;
         const uint32_t body = fw_bodies_of_region(&ground->bodies, r);
         const int32_t age = sheet->layer - ground->bodies.body[body].first_layer;
-        bool holds = true;
-        FW_TRY(
-            fw_ground_holds_tip(ground->setup, &sheet->slice.intended, regions, r, &holds, fault));
-        if (!holds || age <= ground->setup->job->heal_layers)
+        bool large = true;
+        FW_TRY(is_large(ground, sheet, r, &large, fault));
+        if (!large || age <= ground->setup->job->heal_layers)
             continue;
         fw_finding finding =
             of_region(ground->setup, FW_ADRIFT, body, sheet->layer, &regions->region[r]);

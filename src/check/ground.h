@@ -35,6 +35,8 @@ typedef struct fw_ground {
     fw_carried *field;     /* debt; NULL without a resin card */
     uint8_t *touches_post; /* [voids.body] a sealed void that a post helps to seal */
     size_t touches_capacity;
+    uint8_t *large; /* [bodies.body] some region of it could hold the smallest tip */
+    size_t large_capacity;
     fw_pending_onset *pending; /* [pending_count], in order of layer */
     size_t pending_count, pending_capacity;
     fw_carried_peak *peak; /* scratch, [regions] */

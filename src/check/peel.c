@@ -30,11 +30,11 @@ void fw_peel_free(fw_peel *peel)
     *peel = (fw_peel){0};
 }
 
-/* Used unsolved: too small to matter, and the bound is on the safe side. A cluster with cavities is
- * always solved, since its holes are not in the bound. */
+/* Used unsolved: too small to matter, and the bound is on the safe side. A cluster with sealed
+ * voids is always solved, since its holes are not in the bound. */
 static bool is_negligible(const fw_setup *setup, const fw_cluster *cluster)
 {
-    return cluster->cavity_count == 0 && setup->q * cluster->bound_mm4 < setup->unsolved_N;
+    return !cluster->sealed && setup->q * cluster->bound_mm4 < setup->unsolved_N;
 }
 
 static void use_bound(const fw_setup *setup, fw_cluster *cluster)

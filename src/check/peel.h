@@ -18,6 +18,7 @@ typedef struct fw_cluster {
     bool posts_only;                  /* no pixel of it belongs to the part */
     uint32_t first_region;            /* smallest of its solid regions */
     uint32_t region_count;            /* solid regions in it */
+    bool sealed;                      /* a sealed void lies in it, solved or filled */
     uint32_t cavity_count;            /* sealed bodies in it that are large enough to be solved */
     fw_film_shape shape;              /* empty where the bound was used */
     const fw_film_solution *solution; /* NULL where the bound was used; the memo's */
