@@ -212,6 +212,9 @@ static fw_status hand_out_solved(const fw_setup *setup, const fw_sheet *sheet,
     const fw_load_entry *entry = NULL;
     if (cluster->region_count > 1 || sheet->posts_only[cluster->first_region])
         return hand_out_cells(setup, sheet, tributary, index, taker, fault);
+    const int32_t sole = fw_tributary_sole(tributary, cluster->first_region);
+    if (sole != FW_MIXED && cluster->cavity_count == 0)
+        return taker->anchor(taker->context, sole, cluster->force_N, fault);
     FW_TRY(recall(setup, sheet, tributary, index, memo, &entry, fault));
     for (size_t i = 0; i < entry->count; i++) {
         const fw_load_piece *piece = &memo->piece[entry->first + i];

@@ -10,6 +10,9 @@
 #include <math.h>
 #include <stdlib.h>
 
+/* Marks in `sole`, beside anchors (from 0) and FW_NO_ANCHOR. */
+enum { MIXED = FW_MIXED, UNSEEN = -3 };
+
 static const char holder[] = "shares of the anchors";
 
 typedef struct node {
@@ -40,7 +43,12 @@ struct fw_tributary {
     const fw_runs *solid; /* newest layer, borrowed; NULL before the first */
     const fw_regions *regions;
     fw_spans overlaps; /* of the last two layers, kept for its memory */
-    entry *heap;       /* [heap_count] */
+    int32_t *sole;     /* [now.regions] owner of all cells of the region, or MIXED */
+    size_t sole_capacity;
+    int64_t *origin; /* [now.regions] region before, UNSEEN, or MIXED */
+    size_t origin_capacity;
+    bool changed; /* some owner, since sole was filled */
+    entry *heap;  /* [heap_count] */
     size_t heap_count, heap_capacity;
 };
 
@@ -100,6 +108,8 @@ void fw_tributary_free(fw_tributary *field)
     free_layer(&field->before);
     fw_spans_free(&field->overlaps);
     free(field->heap);
+    free(field->sole);
+    free(field->origin);
     free(field);
 }
 
@@ -164,9 +174,11 @@ static void set_node(fw_tributary *field, uint32_t span, int32_t c, node value)
 {
     node *at = node_at(&field->now, span, c);
     const fw_span *s = &field->now.spans.span[span];
-    if (at->anchor != value.anchor)
+    if (at->anchor != value.anchor) {
+        field->changed = true;
         field->now.version[s->key] +=
             mix(field, s->row, c, value.anchor) - mix(field, s->row, c, at->anchor);
+    }
     *at = value;
 }
 
@@ -224,15 +236,67 @@ static fw_status settle(fw_tributary *field, fw_fault *fault)
     return FW_OK;
 }
 
-/* Every reached node of the layer offers once: finds all that a new neighbourhood shortens. */
-static fw_status offer_all(fw_tributary *field, fw_fault *fault)
+/* A fresh node takes from its reached neighbours in one row. */
+static fw_status pull_from_row(fw_tributary *field, uint32_t span, int32_t c, int32_t row,
+                               fw_fault *fault)
 {
-    for (uint32_t span = 0; span < field->now.spans.count; span++) {
-        const fw_span s = field->now.spans.span[span];
-        for (int32_t c = s.c0; c < s.c1; c++) {
-            if (node_at(&field->now, span, c)->anchor != FW_NO_ANCHOR)
-                FW_TRY(offer_round(field, span, c, fault));
+    const fw_spans *spans = &field->now.spans;
+    const fw_span *at = &spans->span[span];
+    if (row < 0 || row >= field->cells.rows)
+        return FW_OK;
+    uint32_t next = fw_spans_find(spans, row, at->key, c - 1);
+    for (; next < spans->row_start[row + 1] && spans->span[next].key == at->key; next++) {
+        const fw_span *s = &spans->span[next];
+        if (s->c0 > c + 1)
+            break;
+        for (int32_t from = s->c0 > c - 1 ? s->c0 : c - 1; from <= c + 1 && from < s->c1; from++) {
+            const node there = *node_at(&field->now, next, from);
+            const int64_t step = row == at->row ? field->right
+                                 : from == c    ? field->down
+                                                : field->diagonal;
+            if (there.anchor != FW_NO_ANCHOR && (row != at->row || from != c))
+                FW_TRY(offer(field, span, c, (node){there.length + step, there.anchor}, fault));
         }
+    }
+    return FW_OK;
+}
+
+/* What is carried from one region stays as short as it was against its neighbours, so only fresh
+ * nodes bring new ways. Where regions have grown together any pair of neighbours may be new: there
+ * every reached node offers. */
+static fw_status offer_span(fw_tributary *field, uint32_t span, fw_fault *fault)
+{
+    const fw_span s = field->now.spans.span[span];
+    const bool joined = field->origin[s.key] == MIXED;
+    for (int32_t c = s.c0; c < s.c1; c++) {
+        const bool reached = node_at(&field->now, span, c)->anchor != FW_NO_ANCHOR;
+        if (joined && reached)
+            FW_TRY(offer_round(field, span, c, fault));
+        for (int32_t row = s.row - 1; !joined && !reached && row <= s.row + 1; row++)
+            FW_TRY(pull_from_row(field, span, c, row, fault));
+    }
+    return FW_OK;
+}
+
+static fw_status offer_fresh(fw_tributary *field, fw_fault *fault)
+{
+    for (uint32_t span = 0; span < field->now.spans.count; span++)
+        FW_TRY(offer_span(field, span, fault));
+    return FW_OK;
+}
+
+/* Which region of the layer before each region comes from: UNSEEN, one, or MIXED. */
+static fw_status find_origins(fw_tributary *field, fw_fault *fault)
+{
+    FW_TRY(fw_grow((void **)&field->origin, &field->origin_capacity, field->now.regions,
+                   sizeof *field->origin, holder, fault));
+    for (uint32_t r = 0; r < field->now.regions; r++)
+        field->origin[r] = UNSEEN;
+    for (size_t i = 0; i < field->overlaps.count; i++) {
+        const uint64_t key = field->overlaps.span[i].key;
+        int64_t *origin = &field->origin[(uint32_t)key];
+        const int64_t from = (int64_t)(key >> 32);
+        *origin = *origin == UNSEEN || *origin == from ? from : MIXED;
     }
     return FW_OK;
 }
@@ -319,8 +383,9 @@ static fw_status renew(fw_tributary *field, const fw_runs *solid, const fw_regio
         return FW_OK;
     FW_TRY(fw_spans_of_overlaps(&field->cells, before, before_regions, solid, regions,
                                 &field->overlaps, fault));
+    FW_TRY(find_origins(field, fault));
     carry(field);
-    return offer_all(field, fault);
+    return offer_fresh(field, fault);
 }
 
 static fw_status check_anchor(const fw_tributary *field, const fw_anchor_contact *anchor,
@@ -366,6 +431,34 @@ static fw_status check_step(const fw_tributary *field, const fw_runs *solid, con
     return FW_OK;
 }
 
+/* Most regions have one owner: found in one walk over the cells, and only where something changed.
+ */
+static fw_status find_sole(fw_tributary *field, fw_fault *fault)
+{
+    const node_layer *now = &field->now;
+    if (!field->changed)
+        return FW_OK;
+    FW_TRY(fw_grow((void **)&field->sole, &field->sole_capacity, now->regions, sizeof *field->sole,
+                   holder, fault));
+    for (uint32_t r = 0; r < now->regions; r++)
+        field->sole[r] = UNSEEN;
+    for (size_t s = 0; s < now->spans.count; s++) {
+        const fw_span *span = &now->spans.span[s];
+        int32_t *sole = &field->sole[span->key];
+        for (int32_t c = span->c0; c < span->c1 && *sole != MIXED; c++) {
+            const int32_t owner = now->node[span->first + (uint32_t)(c - span->c0)].anchor;
+            *sole = *sole == UNSEEN || *sole == owner ? owner : MIXED;
+        }
+    }
+    field->changed = false;
+    return FW_OK;
+}
+
+int32_t fw_tributary_sole(const fw_tributary *field, uint32_t region)
+{
+    return field->sole[region];
+}
+
 fw_status fw_tributary_step(fw_tributary *field, const fw_runs *solid, const fw_regions *regions,
                             const fw_runs *before, const fw_regions *before_regions,
                             double thickness_mm, const fw_anchor_contact *anchors,
@@ -379,11 +472,14 @@ fw_status fw_tributary_step(fw_tributary *field, const fw_runs *solid, const fw_
     field->solid = solid;
     field->regions = regions;
     /* Equal runs have equal labels, so a layer that repeats keeps its nodes. */
-    if (before == NULL || !fw_runs_equal(solid, before))
+    const bool repeats = before != NULL && fw_runs_equal(solid, before);
+    field->changed = field->changed || !repeats;
+    if (!repeats)
         FW_TRY(renew(field, solid, regions, before, before_regions, fault));
     for (size_t i = 0; i < anchor_count; i++)
         FW_TRY(place_anchor(field, anchors[i], fault));
-    return settle(field, fault);
+    FW_TRY(settle(field, fault));
+    return find_sole(field, fault);
 }
 
 fw_status fw_tributary_add_anchor(fw_tributary *field, fw_anchor_contact anchor, fw_fault *fault)
@@ -393,7 +489,8 @@ fw_status fw_tributary_add_anchor(fw_tributary *field, fw_anchor_contact anchor,
         return FW_OK;
     field->heap_count = 0;
     FW_TRY(place_anchor(field, anchor, fault));
-    return settle(field, fault);
+    FW_TRY(settle(field, fault));
+    return find_sole(field, fault);
 }
 
 static node look_up(const fw_tributary *field, uint32_t region, int32_t x, int32_t y)

@@ -21,7 +21,7 @@
 #include "mask/regions.h"
 #include "mask/runs.h"
 
-enum { FW_NO_ANCHOR = -1 };
+enum { FW_NO_ANCHOR = -1, FW_MIXED = -2 };
 
 typedef struct fw_tributary fw_tributary;
 
@@ -54,6 +54,10 @@ fw_status fw_tributary_add_anchor(fw_tributary *field, fw_anchor_contact anchor,
 /* The anchor that carries pixel (x, y) of that region in the newest layer; FW_NO_ANCHOR where none
  * is reached yet or the region has no pixel in that cell. */
 int32_t fw_tributary_owner(const fw_tributary *field, uint32_t region, int32_t x, int32_t y);
+
+/* The owner of every cell of the region, FW_NO_ANCHOR where none has one, or FW_MIXED where they
+ * differ. Cheap. */
+int32_t fw_tributary_sole(const fw_tributary *field, uint32_t region);
 
 /* The length of the path in mm; INFINITY where the owner is FW_NO_ANCHOR. */
 double fw_tributary_length(const fw_tributary *field, uint32_t region, int32_t x, int32_t y);

@@ -117,6 +117,7 @@ static void two_posts_split_a_beam_in_the_middle(void **state)
         advance(&s, map, 0.05, false);
     for (int x = 0; x < W; x++)
         assert_int_equal(owner(&s, x, 3), x < W / 2 ? 1 : 0);
+    assert_int_equal(fw_tributary_sole(s.field, 0), FW_MIXED);
     /* Eight cells of 0.2 mm and five layers of 0.05 mm. */
     assert_true(fabs(fw_tributary_length(s.field, 0, 39, 0) - (8 * 0.2 + 5 * 0.05)) < 1e-9);
     scene_free(&s);
@@ -154,6 +155,7 @@ static void contact_at_the_rim_of_a_cell(void **state)
     advance(&s, map, 0.05, false);
     assert_true(fabs(fw_tributary_length(s.field, 0, 0, 0) - (0.075 - 0.025)) < 1e-9);
     assert_true(fabs(fw_tributary_length(s.field, 0, 5, 0) - (0.2 + 0.05)) < 1e-9);
+    assert_int_equal(fw_tributary_sole(s.field, 0), 0);
     scene_free(&s);
 }
 
