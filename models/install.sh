@@ -21,6 +21,7 @@ git git
 clang clang
 clang-format clang-format
 llvm
+libclang-rt-dev
 libomp-dev
 libcmocka-dev
 python3
