@@ -1,6 +1,6 @@
 /* Public view of a report. */
 #include "passes/api.h"
-#include "passes/memory_sink.h"
+#include "passes/sinks.h"
 #include "report/report_write.h"
 #include "report/summary.h"
 
@@ -84,11 +84,15 @@ falsework_status falsework_report_write_summary(const falsework_report *report,
     return fw_api_status(fw_report_summary(&report->report, sink, &inner), &inner, fault);
 }
 
-static fw_status publish(const fw_output_rules *rules, const fw_bytes *text, fw_fault *fault)
+static fw_status publish(const fw_output_rules *rules, const fw_report *report, fw_fault *fault)
 {
     fw_output *output = NULL;
     FW_TRY(fw_output_begin(rules, &output, fault));
-    fw_status status = fw_output_write(output, "report.json", text->data, text->size, NULL, fault);
+    fw_status status = fw_output_open_file(output, "report.json", fault);
+    if (status == FW_OK)
+        status = fw_report_write(report, fw_sink_to_output(output), fault);
+    if (status == FW_OK)
+        status = fw_output_finish_file(output, fault);
     if (status == FW_OK)
         status = fw_output_publish(output, fault);
     fw_output_close(output);
@@ -100,14 +104,9 @@ falsework_status falsework_report_publish(const falsework_report *report,
                                           const char *out, int replace, falsework_fault *fault)
 {
     fw_fault inner = {0};
-    fw_bytes text = {0};
     const char *protect[FW_SOURCE_COUNT];
     const fw_output_rules rules = fw_api_output(stack, job, out, replace, protect);
-    fw_status status = fw_report_write(&report->report, fw_sink_to_bytes(&text), &inner);
-    if (status == FW_OK)
-        status = publish(&rules, &text, &inner);
-    fw_bytes_free(&text);
-    return fw_api_status(status, &inner, fault);
+    return fw_api_status(publish(&rules, &report->report, &inner), &inner, fault);
 }
 
 void falsework_report_close(falsework_report *report)

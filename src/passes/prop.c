@@ -1,6 +1,6 @@
 #include "passes/prop.h"
 
-#include "passes/memory_sink.h"
+#include "passes/sinks.h"
 #include "passes/write_stack.h"
 #include "report/posts_write.h"
 #include "report/report_write.h"
@@ -53,25 +53,15 @@ static fw_status set_digests(const fw_writing *writing, fw_report *report, fw_fa
     return FW_OK;
 }
 
-static fw_status write_file(fw_output *output, const char *name, const fw_bytes *bytes,
-                            fw_fault *fault)
-{
-    return fw_output_write(output, name, bytes->data, bytes->size, NULL, fault);
-}
-
 static fw_status write_reports(const fw_writing *writing, const fw_report *report, fw_fault *fault)
 {
-    fw_bytes text = {0};
-    fw_status status = to_bytes(report, &text, fault);
-    if (status == FW_OK)
-        status = write_file(writing->output, "report.json", &text, fault);
-    text.size = 0;
-    if (status == FW_OK)
-        status = fw_posts_write(report, fw_sink_to_bytes(&text), fault);
-    if (status == FW_OK)
-        status = write_file(writing->output, "posts.json", &text, fault);
-    fw_bytes_free(&text);
-    return status;
+    fw_output *output = writing->output;
+    FW_TRY(fw_output_open_file(output, "report.json", fault));
+    FW_TRY(fw_report_write(report, fw_sink_to_output(output), fault));
+    FW_TRY(fw_output_finish_file(output, fault));
+    FW_TRY(fw_output_open_file(output, "posts.json", fault));
+    FW_TRY(fw_posts_write(report, fw_sink_to_output(output), fault));
+    return fw_output_finish_file(output, fault);
 }
 
 static fw_status write_and_judge(fw_writing *writing, fw_report *out, fw_fault *fault)

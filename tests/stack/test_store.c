@@ -1,10 +1,9 @@
-/* Packed layers, the ring and the store give back exactly what went in, in memory and from the
+/* Packed layers and the store give back exactly what went in, in memory and from the
  * file; budgets hold. */
 #define _GNU_SOURCE
 
 #include "stack/grey_rows.h"
 #include "stack/packed.h"
-#include "stack/ring.h"
 #include "stack/store.h"
 #include "workshop.h"
 
@@ -86,60 +85,6 @@ static void test_broken_packed_bytes(void **state)
     fw_bytes_free(&packed);
     fw_greys_free(&layer);
     fw_greys_free(&back);
-}
-
-static void check_ring(int32_t keep, int32_t pushes)
-{
-    fw_budget budget = {"ring", SIZE_MAX, 0, 0};
-    fw_ring *ring;
-    fw_greys *layer = calloc((size_t)pushes, sizeof *layer), scratch = {0};
-    assert_int_equal(fw_ring_open(keep, &budget, &ring, NULL), FW_OK);
-    for (int32_t n = 0; n < pushes; n++) {
-        shop_layer(80, 20, 255, &layer[n]);
-        assert_int_equal(fw_ring_push(ring, &layer[n], NULL), FW_OK);
-        assert_int_equal(fw_ring_count(ring), n + 1 < keep ? n + 1 : keep);
-        for (int32_t back = 0; back < fw_ring_count(ring); back++) {
-            const fw_greys *got;
-            assert_int_equal(fw_ring_get(ring, back, &scratch, &got, NULL), FW_OK);
-            assert_true(fw_greys_equal(got, &layer[n - back]));
-            assert_int_equal(got == &scratch, back >= 2);
-        }
-        assert_true(budget.used > 0);
-    }
-    fw_ring_close(ring);
-    assert_int_equal(budget.used, 0);
-    for (int32_t n = 0; n < pushes; n++)
-        fw_greys_free(&layer[n]);
-    fw_greys_free(&scratch);
-    free(layer);
-}
-
-static void test_ring_keeps_the_last_layers(void **state)
-{
-    (void)state;
-    check_ring(2, 9);
-    check_ring(3, 9);
-    check_ring(7, 30);
-    check_ring(50, 20);
-}
-
-static void test_ring_minds_its_budget(void **state)
-{
-    (void)state;
-    fw_budget budget = {"ring", 8000, 0, 0};
-    fw_ring *ring;
-    fw_fault fault = {0};
-    fw_status status = FW_OK;
-    assert_int_equal(fw_ring_open(100, &budget, &ring, NULL), FW_OK);
-    for (int n = 0; n < 100 && status == FW_OK; n++) {
-        fw_greys layer = {0};
-        shop_layer(80, 20, 255, &layer);
-        status = fw_ring_push(ring, &layer, &fault);
-        fw_greys_free(&layer);
-    }
-    assert_fault(status, &fault, FW_MACHINE, "allow more memory");
-    fw_ring_close(ring);
-    assert_int_equal(budget.used, 0);
 }
 
 enum { LAYERS = 40 };
@@ -291,8 +236,6 @@ int main(void)
         cmocka_unit_test(test_packing_loses_nothing),
         cmocka_unit_test(test_rows_that_repeat_cost_nothing),
         cmocka_unit_test(test_broken_packed_bytes),
-        cmocka_unit_test(test_ring_keeps_the_last_layers),
-        cmocka_unit_test(test_ring_minds_its_budget),
         SHOP_TEST(test_store_in_memory_and_in_file),
         SHOP_TEST(test_store_without_a_place_for_its_file),
         SHOP_TEST(test_store_on_a_full_disk),
