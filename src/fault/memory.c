@@ -4,7 +4,8 @@
 
 fw_status fw_allocate(void **out, size_t count, size_t size, const char *holder, fw_fault *fault)
 {
-    *out = calloc(count > 0 ? count : 1, size);
+    const bool overflows = size > 0 && count > SIZE_MAX / size;
+    *out = overflows ? NULL : calloc(count > 0 ? count : 1, size);
     return *out != NULL ? FW_OK : fw_fault_memory(fault, holder);
 }
 
