@@ -75,7 +75,11 @@ int main(int argc, char **argv)
     const int recode = strcmp(argv[2], "recode") == 0;
     int failed = 0;
 #pragma omp parallel for schedule(dynamic, 1) reduction(+ : failed)
-    for (int i = 3; i < argc; i++)
-        failed += take(argv[i], recode);
+    for (int i = 3; i < argc; i++) {
+        if (take(argv[i], recode) != 0) {
+            (void)fprintf(stderr, "bench_floor: could not take %s\n", argv[i]);
+            failed++;
+        }
+    }
     return failed != 0;
 }
