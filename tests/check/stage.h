@@ -22,6 +22,7 @@ typedef struct stage {
     uint8_t *grey; /* [layers][height][width] */
     fw_posts posts;
     int32_t batch;
+    bool memo_off;
 } stage;
 
 static inline stage stage_new(int32_t width, int32_t height, int32_t layers)
@@ -79,6 +80,48 @@ static inline void stage_box(stage *s, int x0, int y0, int n0, int x1, int y1, i
                    grey, (size_t)(x1 - x0));
 }
 
+/* Pixels of layers [n0, n1) whose centre lies within r px of (cx, cy). */
+static inline void stage_disc(stage *s, double cx, double cy, double r, int n0, int n1,
+                              uint8_t grey)
+{
+    for (int y = 0; y < s->height; y++)
+        for (int x = 0; x < s->width; x++)
+            if (hypot(x + 0.5 - cx, y + 0.5 - cy) <= r)
+                stage_box(s, x, y, n0, x + 1, y + 1, n1, grey);
+}
+
+/* A layer as a picture: rows of equal length, '.' dark, anything else as in `lit` full. */
+static inline void stage_picture(stage *s, int n, const char *const *rows, const char *lit)
+{
+    for (int y = 0; y < s->height; y++)
+        for (int x = 0; x < s->width; x++)
+            stage_box(s, x, y, n, x + 1, y + 1, n + 1, strchr(lit, rows[y][x]) != NULL ? 255 : 0);
+}
+
+static inline bool stage_at(const stage *s, int x, int y, int n)
+{
+    return s->grey[((size_t)n * (size_t)s->height + (size_t)y) * (size_t)s->width + (size_t)x] >=
+           128;
+}
+
+/* Lights each pixel with the given chance; xorshift64* (Vigna 2016), the same everywhere. */
+static inline void stage_noise(stage *s, uint64_t seed, double chance)
+{
+    const size_t count = (size_t)s->width * (size_t)s->height * (size_t)s->layers;
+    for (size_t i = 0; i < count; i++) {
+        seed ^= seed >> 12;
+        seed ^= seed << 25;
+        seed ^= seed >> 27;
+        const uint32_t bits = (uint32_t)((seed * UINT64_C(2685821657736338717)) >> 32);
+        s->grey[i] = bits < chance * 4294967296.0 ? 255 : 0;
+    }
+}
+
+static inline fw_setup stage_setup(const stage *s)
+{
+    return fw_setup_make(&s->job, s->width, s->height, s->layers, 0, 255);
+}
+
 static inline fw_greys stage_layer(const stage *s, int32_t n)
 {
     fw_greys out = {0};
@@ -125,10 +168,49 @@ static inline void stage_post(stage *s, double x_mm, double y_mm, int32_t tip_la
     }
 }
 
+/* Draws all posts as they would be written, rims in grey where the stack has more than two levels.
+ */
+static inline void stage_stamp(stage *s, bool two_level)
+{
+    const fw_setup setup = stage_setup(s);
+    const fw_screen screen = {.width = s->width,
+                              .height = s->height,
+                              .px_mm = setup.px_mm,
+                              .py_mm = setup.py_mm,
+                              .full = 255,
+                              .brightest = 255,
+                              .two_level = two_level};
+    fw_stamp_plan *plan = NULL;
+    assert_int_equal(fw_stamp_plan_make(&s->posts, &screen, setup.t_mm, &plan, NULL), FW_OK);
+    for (int32_t n = 0; n < s->layers; n++) {
+        fw_greys in = stage_layer(s, n), out = {0};
+        bool touched = false;
+        assert_int_equal(fw_stamp_layer(plan, n, &in, &out, &touched, NULL), FW_OK);
+        for (int32_t y = 0; y < s->height; y++)
+            for (int32_t x = 0; x < s->width; x++)
+                stage_box(s, x, y, n, x + 1, y + 1, n + 1, (uint8_t)fw_greys_at(&out, x, y));
+        fw_greys_free(&in);
+        fw_greys_free(&out);
+    }
+    fw_stamp_plan_free(plan);
+}
+
+/* A layer cut into runs and regions, as the judge sees it. */
+static inline fw_slice stage_slice(const stage *s, int32_t n)
+{
+    const fw_setup setup = stage_setup(s);
+    fw_greys greys = stage_layer(s, n);
+    fw_slice slice = {0};
+    assert_int_equal(fw_slice_build(&greys, setup.intended_least, setup.solid_least, &slice, NULL),
+                     FW_OK);
+    fw_greys_free(&greys);
+    return slice;
+}
+
 static inline fw_report stage_judge(const stage *s)
 {
     fw_fault fault = {0};
-    fw_budget budget = {.holder = "memo", .limit = 16u << 20};
+    fw_budget budget = {.holder = "memo", .limit = s->memo_off ? 0 : 16u << 20};
     fw_film_memo *memo = NULL;
     fw_judge *judge = NULL;
     fw_report report = {0};
@@ -164,6 +246,13 @@ static inline void stage_free(stage *s)
 {
     free(s->grey);
     free(s->posts.item);
+}
+
+static inline void assert_near(double got, double expected, double relative)
+{
+    if (!(fabs(got - expected) <= relative * fabs(expected)))
+        fail_msg("got %.10g, expected %.10g, off by %.3g, allowed %.3g", got, expected,
+                 got / expected - 1, relative);
 }
 
 /* The finding of a kind, or NULL. */

@@ -1,12 +1,10 @@
-/* One line, whatever a hostile name holds; growth and budgets. */
+/* One line, whatever a hostile name holds. */
 #include "fault/fault.h"
-#include "fault/memory.h"
 
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
 #include <stdint.h>
-#include <stdlib.h>
 #include <string.h>
 
 #include <cmocka.h>
@@ -22,6 +20,19 @@ static void stays_one_line(void **state)
     assert_int_equal(fw_fault_set(NULL, FW_MACHINE, "nobody listens"), FW_MACHINE);
 }
 
+/* Control characters of ASCII (ECMA-6): 1 .. 31 and 127. All else, UTF-8 too, stays as it is. */
+static void only_control_characters_go(void **state)
+{
+    (void)state;
+    for (int c = 1; c < 256; c++) {
+        const char name[2] = {(char)c, '\0'};
+        const char gone[2] = {'?', '\0'};
+        fw_fault fault = {0};
+        (void)fw_fault_set(&fault, FW_INPUT, "%s", name);
+        assert_string_equal(fault.text, c < 32 || c == 127 ? gone : name);
+    }
+}
+
 static void is_cut_and_terminated(void **state)
 {
     (void)state;
@@ -33,61 +44,40 @@ static void is_cut_and_terminated(void **state)
     assert_int_equal(strlen(fault.text), FW_FAULT_TEXT - 1);
 }
 
-static void grows_and_keeps(void **state)
+static fw_status passes_up(fw_status below, bool *went_on)
+{
+    FW_TRY(below);
+    *went_on = true;
+    return FW_OK;
+}
+
+static void a_failure_passes_up_as_it_is(void **state)
 {
     (void)state;
-    int *array = NULL;
-    size_t capacity = 0;
-    for (int i = 0; i < 1000; i++) {
-        assert_int_equal(
-            fw_grow((void **)&array, &capacity, (size_t)i + 1, sizeof *array, "test", NULL), FW_OK);
-        assert_true(capacity > (size_t)i);
-        array[i] = i;
-    }
-    for (int i = 0; i < 1000; i++)
-        assert_int_equal(array[i], i);
-    const size_t before = capacity;
-    int *const same = array;
+    bool went_on = false;
+    assert_int_equal(passes_up(FW_STOPPED, &went_on), FW_STOPPED);
+    assert_false(went_on);
+    assert_int_equal(passes_up(FW_OK, &went_on), FW_OK);
+    assert_true(went_on);
+}
+
+/* "what, where, what to do" */
+static void no_memory_names_its_holder(void **state)
+{
+    (void)state;
     fw_fault fault = {0};
-    assert_int_equal(
-        fw_grow((void **)&array, &capacity, SIZE_MAX / 2, sizeof *array, "test", &fault),
-        FW_MACHINE);
-    assert_ptr_equal(array, same);
-    assert_int_equal(capacity, before);
-    assert_non_null(strstr(fault.text, "test"));
-    free(array);
-}
-
-static void refuses_a_product_that_overflows(void **state)
-{
-    (void)state;
-    void *out = NULL;
-    assert_int_equal(fw_allocate(&out, SIZE_MAX / 4, 8, "test", NULL), FW_MACHINE);
-    assert_int_equal(fw_allocate(&out, 0, 8, "test", NULL), FW_OK);
-    assert_non_null(out);
-    free(out);
-}
-
-static void budget_counts(void **state)
-{
-    (void)state;
-    fw_budget budget = {.holder = "test", .limit = 100};
-    assert_true(fw_budget_fits(&budget, 100));
-    assert_false(fw_budget_fits(&budget, 101));
-    fw_budget_charge(&budget, 60);
-    assert_true(fw_budget_fits(&budget, 40));
-    assert_false(fw_budget_fits(&budget, 41));
-    assert_false(fw_budget_fits(&budget, SIZE_MAX));
-    fw_budget_release(&budget, 50);
-    assert_int_equal(budget.used, 10);
-    assert_int_equal(budget.peak, 60);
+    assert_int_equal(fw_fault_memory(&fault, "the attic"), FW_MACHINE);
+    assert_int_equal(fault.status, FW_MACHINE);
+    assert_int_equal(strncmp(fault.text, "out of memory, the attic, ", 26), 0);
+    assert_true(strlen(fault.text) > 30);
+    assert_int_equal(fw_fault_memory(NULL, "the attic"), FW_MACHINE);
 }
 
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(stays_one_line), cmocka_unit_test(is_cut_and_terminated),
-        cmocka_unit_test(grows_and_keeps), cmocka_unit_test(refuses_a_product_that_overflows),
-        cmocka_unit_test(budget_counts)};
+        cmocka_unit_test(stays_one_line), cmocka_unit_test(only_control_characters_go),
+        cmocka_unit_test(is_cut_and_terminated), cmocka_unit_test(a_failure_passes_up_as_it_is),
+        cmocka_unit_test(no_memory_names_its_holder)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
