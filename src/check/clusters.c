@@ -172,7 +172,9 @@ static void add_row_bounds(const fw_setup *setup, const fw_slice *slice, fw_peel
     const double unit = setup->px_mm * setup->px_mm * setup->px_mm * setup->py_mm;
     for (uint32_t i = 0; i < solid->count; i++) {
         const double l = solid->run[i].x1 - solid->run[i].x0;
-        out->cluster[out->of_region[label[i]]].bound_mm4 += unit * (l * l * l / 12 + l / 6);
+        fw_cluster *cluster = &out->cluster[out->of_region[label[i]]];
+        cluster->bound_mm4 += unit * (l * l * l / 12 + l / 6);
+        cluster->area_mm2 += l * setup->px_mm * setup->py_mm;
     }
 }
 

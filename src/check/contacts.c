@@ -26,7 +26,10 @@ static fw_status add_plate(fw_share *share, fw_sheet *sheet, uint32_t region, co
     FW_TRY(fw_grow((void **)&share->plate, &share->plate_capacity, share->plate_count + 1,
                    sizeof *share->plate, holder, fault));
     const double pixels = (double)r->pixels, mm2 = share->setup->px_mm * share->setup->py_mm;
-    const uint32_t in_part = fw_runs_find(fw_sheet_part(sheet), r->first_x, r->first_y);
+    int32_t y = 0; /* of its first pixel: a region that is not post alone has one */
+    while (contact->row[y + 1] == 0)
+        y++;
+    const uint32_t in_part = fw_runs_find(fw_sheet_part(sheet), contact->run[0].x0, y);
     share->plate[share->plate_count++] = (fw_plate_account){
         .part = in_part != UINT32_MAX
                     ? sheet->part_body[fw_sheet_part_regions(sheet)->label[in_part]]

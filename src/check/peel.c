@@ -37,9 +37,17 @@ static bool is_negligible(const fw_setup *setup, const fw_cluster *cluster)
     return !cluster->sealed && setup->q * cluster->bound_mm4 < setup->unsolved_N;
 }
 
+/* Of a cluster without sealed voids: what its rows carry at most, and no more than the liquid
+ * holds.
+ */
+static double bound_N(const fw_setup *setup, const fw_cluster *cluster, double q)
+{
+    return fmin(q * cluster->bound_mm4, setup->cap_MPa * cluster->area_mm2);
+}
+
 static void use_bound(const fw_setup *setup, fw_cluster *cluster)
 {
-    cluster->force_N = setup->q * cluster->bound_mm4;
+    cluster->force_N = bound_N(setup, cluster, setup->q);
     cluster->limited_by = FW_BY_BOUND;
 }
 
@@ -83,7 +91,7 @@ static double cluster_bound(const fw_setup *setup, const fw_cluster *cluster, do
 {
     const fw_film_solution *solution = cluster->solution;
     if (solution == NULL)
-        return q * cluster->bound_mm4;
+        return bound_N(setup, cluster, q);
     if (is_straight(setup, solution, q))
         return q * solution->integral_mm4;
     const double full = setup->cap_MPa * solution->area_mm2;
@@ -91,12 +99,12 @@ static double cluster_bound(const fw_setup *setup, const fw_cluster *cluster, do
     return fmin(full, above);
 }
 
-void fw_peel_range_bound(const fw_setup *setup, const fw_peel *peel, double bound_N[2])
+void fw_peel_range_bound(const fw_setup *setup, const fw_peel *peel, double most_N[2])
 {
     for (int end = 0; end < 2; end++) {
-        bound_N[end] = 0;
+        most_N[end] = 0;
         for (uint32_t c = 0; c < peel->count; c++)
-            bound_N[end] += cluster_bound(setup, &peel->cluster[c], setup->q_range[end]);
+            most_N[end] += cluster_bound(setup, &peel->cluster[c], setup->q_range[end]);
     }
 }
 

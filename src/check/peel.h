@@ -14,6 +14,7 @@
 
 typedef struct fw_cluster {
     int32_t x0, y0, x1, y1;           /* px, box */
+    double area_mm2;                  /* of its solid pixels, sealed voids not counted */
     double bound_mm4;                 /* upper bound of the integral, from row runs, holes open */
     bool posts_only;                  /* no pixel of it belongs to the part */
     uint32_t first_region;            /* smallest of its solid regions */

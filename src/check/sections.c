@@ -82,13 +82,12 @@ static int32_t end_layer(const fw_share *share, const fw_post *post)
 static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t index,
                                  fw_layer_row *rows, fw_fault *fault)
 {
-    const fw_post *post = &share->posts->item[index];
     fw_post_account *account = &share->post[index];
-    fw_runs footprint = {0}, contact = {0};
+    fw_runs contact = {0};
+    if (account->end.height == 0)
+        return FW_OK; /* nothing of its last section is solid: it holds nothing */
     fw_status status =
-        fw_stamp_post(share->plan, (size_t)index, post->tip_layer - 1, false, &footprint, fault);
-    if (status == FW_OK)
-        status = fw_runs_intersect(&footprint, fw_slice_solid(&sheet->slice), &contact, fault);
+        fw_runs_intersect(&account->end, fw_slice_solid(&sheet->slice), &contact, fault);
     if (status == FW_OK) {
         shrink(&account->section.area_mm2[FW_POST_TIP],
                (double)fw_runs_pixels(&contact) * share->setup->px_mm * share->setup->py_mm);
@@ -103,9 +102,19 @@ static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t
         if (run != UINT32_MAX)
             account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
     }
-    fw_runs_free(&footprint);
+    fw_runs_free(&account->end);
     fw_runs_free(&contact);
     return status;
+}
+
+/* The last sections of the posts whose tip layer comes next. */
+static fw_status keep_ends(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
+{
+    for (size_t p = 0; p < share->posts->count && sheet->solid_members.count > 0; p++) {
+        if (share->posts->item[p].tip_layer - 1 == sheet->layer)
+            FW_TRY(fw_members_of(&sheet->solid_members, (int32_t)p, &share->post[p].end, fault));
+    }
+    return FW_OK;
 }
 
 static fw_status measure_contacts(fw_share *share, const fw_sheet *sheet, fw_layer_row *rows,
@@ -113,7 +122,8 @@ static fw_status measure_contacts(fw_share *share, const fw_sheet *sheet, fw_lay
 {
     for (size_t p = 0; p < share->posts->count; p++) {
         const fw_post *post = &share->posts->item[p];
-        if (post->routed && end_layer(share, post) == sheet->layer)
+        const bool within = post->routed && post->tip_layer < share->setup->layers;
+        if (within && end_layer(share, post) == sheet->layer)
             FW_TRY(measure_contact(share, sheet, (int32_t)p, rows, fault));
     }
     return FW_OK;
@@ -125,5 +135,6 @@ fw_status fw_sections_measure(fw_share *share, const fw_sheet *sheet, fw_layer_r
     FW_TRY(measure_sections(share, sheet, fault));
     if (sheet->layer == 0)
         FW_TRY(group_feet(share, sheet, fault));
+    FW_TRY(keep_ends(share, sheet, fault));
     return measure_contacts(share, sheet, rows, fault);
 }

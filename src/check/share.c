@@ -22,6 +22,8 @@ fw_status fw_share_open(const fw_setup *setup, const fw_posts *posts, const fw_s
 void fw_share_close(fw_share *share)
 {
     fw_tributary_free(share->tributary);
+    for (size_t p = 0; p < share->post_count; p++)
+        fw_runs_free(&share->post[p].end);
     free(share->post);
     free(share->plate);
     free(share->group);

@@ -24,6 +24,7 @@ typedef struct fw_post_account {
     int32_t load_layer;      /* of the largest tip load; -1 */
     int32_t seen_layers;     /* layers below the tip in which it has any solid pixel */
     bool contact_known;      /* its end in the part was measured */
+    fw_runs end;             /* solid pixels of its last section, until then; owned */
     double tip_N, own_N;     /* of the layer at hand */
     int32_t touched_layer;   /* layer for which the two were last cleared */
     int32_t part;            /* part body over its tip, -1 */
