@@ -31,22 +31,25 @@ static fw_status push(fw_member_runs *out, fw_member_run run, fw_fault *fault)
     return FW_OK;
 }
 
-/* One row of the intersection: two ascending lists, walked together. */
+/* One row of the intersection. j steps back where the members do, so both kinds of lists (ascending
+ * or overlapping) cost little more than their runs. */
 static fw_status row_within(const fw_member_runs *members, const fw_runs *set, int32_t y,
                             fw_member_runs *out, fw_fault *fault)
 {
-    uint32_t i = members->row[y], j = set->row[y];
-    while (i < members->row[y + 1] && j < set->row[y + 1]) {
+    const uint32_t first = set->row[y], end = set->row[y + 1];
+    uint32_t j = first;
+    for (uint32_t i = members->row[y]; i < members->row[y + 1]; i++) {
         const fw_member_run m = members->run[i];
-        const fw_run s = set->run[j];
-        const int32_t x0 = m.x0 > s.x0 ? m.x0 : s.x0;
-        const int32_t x1 = m.x1 < s.x1 ? m.x1 : s.x1;
-        if (x0 < x1)
-            FW_TRY(push(out, (fw_member_run){x0, x1, m.post}, fault));
-        if (m.x1 < s.x1)
-            i++;
-        else
+        while (j > first && set->run[j - 1].x1 > m.x0)
+            j--;
+        while (j < end && set->run[j].x1 <= m.x0)
             j++;
+        for (; j < end && set->run[j].x0 < m.x1; j++) {
+            const fw_run s = set->run[j];
+            const int32_t x0 = m.x0 > s.x0 ? m.x0 : s.x0;
+            const int32_t x1 = m.x1 < s.x1 ? m.x1 : s.x1;
+            FW_TRY(push(out, (fw_member_run){x0, x1, m.post}, fault));
+        }
     }
     return FW_OK;
 }
@@ -140,5 +143,66 @@ fw_status fw_members_pieces(const fw_member_runs *members, const fw_runs *set,
     if (out->count > 0)
         qsort(out->item, out->count, sizeof *out->item, by_region_and_post);
     join_equal(out);
+    return FW_OK;
+}
+
+static int by_pair(const void *left, const void *right)
+{
+    const fw_member_pair *x = left, *y = right;
+    if (x->a != y->a)
+        return x->a < y->a ? -1 : 1;
+    return (x->b > y->b) - (x->b < y->b);
+}
+
+static fw_status note_pair(fw_member_pairs *list, fw_member_run m, fw_member_run n, fw_fault *fault)
+{
+    const int32_t x0 = m.x0 > n.x0 ? m.x0 : n.x0, x1 = m.x1 < n.x1 ? m.x1 : n.x1;
+    if (x0 >= x1)
+        return FW_OK;
+    FW_TRY(fw_grow((void **)&list->item, &list->capacity, list->count + 1, sizeof *list->item,
+                   holder, fault));
+    list->item[list->count++] = m.post < n.post ? (fw_member_pair){m.post, n.post, x1 - x0}
+                                                : (fw_member_pair){n.post, m.post, x1 - x0};
+    return FW_OK;
+}
+
+/* The pairs of one run that was lost: with those who own its pixels, and with the rest of the row
+ * that lost them too. */
+static fw_status pairs_of_run(const fw_member_runs *members, const fw_member_runs *lost, int32_t y,
+                              uint32_t i, fw_member_pairs *out, fw_fault *fault)
+{
+    const fw_member_run m = lost->run[i];
+    for (uint32_t j = members->row[y]; j < members->row[y + 1]; j++)
+        FW_TRY(note_pair(out, m, members->run[j], fault));
+    for (uint32_t j = i + 1; j < lost->row[y + 1]; j++) {
+        if (lost->run[j].post != m.post)
+            FW_TRY(note_pair(out, m, lost->run[j], fault));
+    }
+    return FW_OK;
+}
+
+static void join_pairs(fw_member_pairs *list)
+{
+    size_t kept = 0;
+    if (list->count > 0)
+        qsort(list->item, list->count, sizeof *list->item, by_pair);
+    for (size_t i = 0; i < list->count; i++) {
+        if (kept > 0 && by_pair(&list->item[kept - 1], &list->item[i]) == 0)
+            list->item[kept - 1].pixels += list->item[i].pixels;
+        else
+            list->item[kept++] = list->item[i];
+    }
+    list->count = kept;
+}
+
+fw_status fw_members_pairs(const fw_member_runs *members, const fw_member_runs *lost,
+                           fw_member_pairs *out, fw_fault *fault)
+{
+    out->count = 0;
+    for (int32_t y = 0; y < lost->height; y++) {
+        for (uint32_t i = lost->row[y]; i < lost->row[y + 1]; i++)
+            FW_TRY(pairs_of_run(members, lost, y, i, out, fault));
+    }
+    join_pairs(out);
     return FW_OK;
 }

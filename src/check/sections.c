@@ -27,32 +27,93 @@ static void measure_section(fw_share *share, int32_t layer, int32_t index, doubl
     share->post[index].seen_layers++;
 }
 
+/* Solid pixels that a post claims in one layer, whoever else does. */
+typedef struct claim {
+    int32_t post;
+    int64_t pixels;
+} claim;
+
+typedef struct claims {
+    claim *item; /* [count], sorted by post */
+    size_t count;
+} claims;
+
 static int by_post(const void *left, const void *right)
 {
-    const fw_member_piece *a = left, *b = right;
+    const claim *a = left, *b = right;
     return (a->post > b->post) - (a->post < b->post);
 }
 
-/* Sums the pieces of each post over its regions. */
+static void join_claims(claims *list)
+{
+    size_t kept = 0;
+    if (list->count > 0)
+        qsort(list->item, list->count, sizeof *list->item, by_post);
+    for (size_t i = 0; i < list->count; i++) {
+        if (kept > 0 && list->item[kept - 1].post == list->item[i].post)
+            list->item[kept - 1].pixels += list->item[i].pixels;
+        else
+            list->item[kept++] = list->item[i];
+    }
+    list->count = kept;
+}
+
+static fw_status list_claims(const fw_sheet *sheet, claims *out, fw_fault *fault)
+{
+    const fw_member_runs *lost = &sheet->solid_lost;
+    FW_TRY(fw_allocate((void **)&out->item, sheet->pieces.count + lost->count, sizeof *out->item,
+                       holder, fault));
+    for (size_t i = 0; i < sheet->pieces.count; i++)
+        out->item[out->count++] = (claim){sheet->pieces.item[i].post, sheet->pieces.item[i].pixels};
+    for (uint32_t i = 0; i < lost->count; i++)
+        out->item[out->count++] = (claim){lost->run[i].post, lost->run[i].x1 - lost->run[i].x0};
+    join_claims(out);
+    return FW_OK;
+}
+
+static int64_t claimed_by(const claims *list, int32_t post)
+{
+    const claim wanted = {.post = post};
+    const claim *found = bsearch(&wanted, list->item, list->count, sizeof *list->item, by_post);
+    return found->pixels; /* who shares a pixel claims it */
+}
+
+/* `bearer` carries the part of the load of `other` that lies in what both claim. */
+static fw_status note_together(fw_share *share, int32_t layer, int32_t bearer, int32_t other,
+                               double part, fw_fault *fault)
+{
+    const fw_post *post = &share->posts->item[bearer];
+    const double t = share->setup->t_mm;
+    const fw_zone zone = fw_post_zone(post, fw_post_middle(layer, t), fw_post_face(post, t));
+    return fw_together_note(&share->together, bearer, other, zone == FW_ZONE_NECK, part, fault);
+}
+
+static fw_status measure_pairs(fw_share *share, const fw_sheet *sheet, const claims *list,
+                               fw_fault *fault)
+{
+    for (size_t i = 0; i < sheet->pairs.count; i++) {
+        const fw_member_pair *pair = &sheet->pairs.item[i];
+        const double both = (double)pair->pixels;
+        FW_TRY(note_together(share, sheet->layer, pair->a, pair->b,
+                             both / (double)claimed_by(list, pair->b), fault));
+        FW_TRY(note_together(share, sheet->layer, pair->b, pair->a,
+                             both / (double)claimed_by(list, pair->a), fault));
+    }
+    return FW_OK;
+}
+
 static fw_status measure_sections(fw_share *share, const fw_sheet *sheet, fw_fault *fault)
 {
-    const size_t count = sheet->pieces.count;
-    fw_member_piece *piece = NULL;
-    FW_TRY(fw_allocate((void **)&piece, count, sizeof *piece, holder, fault));
-    for (size_t i = 0; i < count; i++)
-        piece[i] = sheet->pieces.item[i];
-    if (count > 0)
-        qsort(piece, count, sizeof *piece, by_post);
-    for (size_t i = 0; i < count;) {
-        const int32_t post = piece[i].post;
-        int64_t pixels = 0;
-        for (; i < count && piece[i].post == post; i++)
-            pixels += piece[i].pixels;
-        measure_section(share, sheet->layer, post,
-                        (double)pixels * share->setup->px_mm * share->setup->py_mm);
-    }
-    free(piece);
-    return FW_OK;
+    const double pixel_mm2 = share->setup->px_mm * share->setup->py_mm;
+    claims list = {0};
+    fw_status status = list_claims(sheet, &list, fault);
+    for (size_t i = 0; i < list.count && status == FW_OK; i++)
+        measure_section(share, sheet->layer, list.item[i].post,
+                        (double)list.item[i].pixels * pixel_mm2);
+    if (status == FW_OK)
+        status = measure_pairs(share, sheet, &list, fault);
+    free(list.item);
+    return status;
 }
 
 /* One group for each region of layer 0 with posts in it; the pieces come sorted by region. */

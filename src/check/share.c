@@ -27,6 +27,7 @@ void fw_share_close(fw_share *share)
     free(share->post);
     free(share->plate);
     free(share->group);
+    free(share->together.row);
     free(share->touched);
     free(share->waiting);
     free(share->loads.entry);
@@ -242,8 +243,21 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
     return FW_OK;
 }
 
+/* The foot's load is the whole load of a post, and stays its own here. */
+static void add_loads_of_others(fw_share *share)
+{
+    for (size_t i = 0; i < share->together.count; i++) {
+        const fw_together_row *row = &share->together.row[i];
+        const double other_N = share->post[row->other].demand.load_N[FW_POST_FOOT];
+        double *load = share->post[row->bearer].demand.load_N;
+        load[FW_POST_NECK] += row->neck * other_N;
+        load[FW_POST_SHAFT] += row->shaft * other_N;
+    }
+}
+
 void fw_share_finish(fw_share *share, fw_layer_row *rows)
 {
+    add_loads_of_others(share);
     for (size_t p = 0; p < share->post_count; p++) {
         fw_post_account *account = &share->post[p];
         if (account->contact_known || share->plan == NULL)

@@ -5,6 +5,7 @@
 
 #include "check/loads.h"
 #include "check/sheet.h"
+#include "check/together.h"
 #include "posts/margins.h"
 #include "posts/tributary.h"
 
@@ -58,7 +59,8 @@ typedef struct fw_share {
     size_t plate_count, plate_capacity;
     fw_foot_group *group; /* [group_count] */
     size_t group_count, group_capacity;
-    int32_t *touched; /* posts that the layer at hand loads */
+    fw_together together; /* posts that run into one another */
+    int32_t *touched;     /* posts that the layer at hand loads */
     size_t touched_count, touched_capacity;
     fw_load_memo loads; /* of the batch at hand */
     fw_waiting *waiting;
@@ -81,7 +83,8 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
 /* The contact of a post is known now: gives rows the margins of the layers that waited for it. */
 void fw_share_settle(fw_share *share, int32_t post, fw_layer_row *rows);
 
-/* After the last layer: posts whose contact was never seen count as holding nothing. */
+/* After the last layer: posts whose contact was never seen count as holding nothing, and necks and
+ * shafts get what they carry for the posts that run into them. */
 void fw_share_finish(fw_share *share, fw_layer_row *rows);
 void fw_share_close(fw_share *share);
 

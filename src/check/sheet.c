@@ -9,15 +9,19 @@ static const char holder[] = "layers under judgement";
 static fw_status split_posts(fw_sheet *sheet, const fw_stamp_plan *plan, int32_t layer,
                              fw_fault *fault)
 {
-    fw_member_runs footprint = {0};
+    fw_member_runs footprint = {0}, lost = {0};
     fw_runs posts = {0};
     const fw_runs *solid = fw_slice_solid(&sheet->slice);
-    fw_status status = fw_stamp_members(plan, layer, &footprint, fault);
+    fw_status status = fw_stamp_members(plan, layer, &footprint, &lost, fault);
     if (status == FW_OK)
         status =
             fw_members_within(&footprint, &sheet->slice.intended, &sheet->intended_members, fault);
     if (status == FW_OK)
         status = fw_members_within(&footprint, solid, &sheet->solid_members, fault);
+    if (status == FW_OK)
+        status = fw_members_within(&lost, solid, &sheet->solid_lost, fault);
+    if (status == FW_OK)
+        status = fw_members_pairs(&sheet->solid_members, &sheet->solid_lost, &sheet->pairs, fault);
     if (status == FW_OK)
         status = fw_members_set(&sheet->intended_members, NULL, NULL, &posts, fault);
     if (status == FW_OK && posts.count > 0)
@@ -28,6 +32,7 @@ static fw_status split_posts(fw_sheet *sheet, const fw_stamp_plan *plan, int32_t
         status = fw_members_pieces(&sheet->solid_members, solid,
                                    fw_slice_solid_regions(&sheet->slice), &sheet->pieces, fault);
     fw_member_runs_free(&footprint);
+    fw_member_runs_free(&lost);
     fw_runs_free(&posts);
     return status;
 }
@@ -49,6 +54,8 @@ fw_status fw_sheet_build(fw_sheet *sheet, const fw_setup *setup, const fw_stamp_
     sheet->layer = layer;
     fw_members_clear(&sheet->intended_members);
     fw_members_clear(&sheet->solid_members);
+    fw_members_clear(&sheet->solid_lost);
+    sheet->pairs.count = 0;
     sheet->pieces.count = 0;
     fw_contacts_clear(&sheet->contacts);
     FW_TRY(fw_slice_build(greys, setup->intended_least, setup->solid_least, &sheet->slice, fault));
@@ -114,6 +121,8 @@ void fw_sheet_free(fw_sheet *sheet)
     fw_slice_free(&sheet->slice);
     fw_member_runs_free(&sheet->intended_members);
     fw_member_runs_free(&sheet->solid_members);
+    fw_member_runs_free(&sheet->solid_lost);
+    free(sheet->pairs.item);
     free(sheet->pieces.item);
     fw_runs_free(&sheet->own_part);
     fw_regions_free(&sheet->own_part_regions);

@@ -26,7 +26,9 @@ typedef struct fw_sheet {
     fw_slice slice;
     fw_member_runs intended_members; /* posts within intended */
     fw_member_runs solid_members;    /* posts within solid */
+    fw_member_runs solid_lost;       /* what posts lost to one another, within solid */
     fw_member_pieces pieces;         /* solid_members in the regions of solid */
+    fw_member_pairs pairs;           /* who claims solid pixels together */
     fw_runs own_part; /* intended without posts; empty when there are no posts here */
     fw_regions own_part_regions;
     fw_overlaps from_before;      /* of intended regions */

@@ -256,14 +256,21 @@ static fw_status flatten(canvas *c, fw_fault *fault)
     return FW_OK;
 }
 
-/* Leaves the spans of row y in c->flat. Rows are asked for in ascending order. */
-static fw_status canvas_row(canvas *c, int32_t y, fw_fault *fault)
+/* Leaves the spans of row y in c->raw. Rows are asked for in ascending order. */
+static fw_status canvas_gather(canvas *c, int32_t y, fw_fault *fault)
 {
     canvas_advance(c, y);
     c->raw.count = 0;
     for (size_t i = 0; i < c->active_count; i++)
         FW_TRY(c->make_spans(c, &c->disc[c->active[i]], y, fault));
     sort_spans(&c->raw);
+    return FW_OK;
+}
+
+/* The same, resolved into c->flat. */
+static fw_status canvas_row(canvas *c, int32_t y, fw_fault *fault)
+{
+    FW_TRY(canvas_gather(c, y, fault));
     return flatten(c, fault);
 }
 
@@ -373,32 +380,72 @@ static fw_status add_member(fw_member_runs *out, span s, fw_fault *fault)
     return FW_OK;
 }
 
-static fw_status list_members(canvas *c, fw_member_runs *out, fw_fault *fault)
+/* What span s loses to those of greater value; `list` ascends by x0, items before `first` end
+ * before s begins. */
+static fw_status add_lost(const spans *list, size_t first, span s, fw_member_runs *out,
+                          fw_fault *fault)
 {
-    out->row[0] = 0;
+    int32_t x = s.x0;
+    for (size_t i = first; i < list->count && list->item[i].x0 < s.x1; i++) {
+        const span winner = list->item[i];
+        if (winner.value <= s.value)
+            continue;
+        const span lost = {winner.x0 > x ? winner.x0 : x, lesser(winner.x1, s.x1), s.value};
+        if (lost.x0 >= lost.x1)
+            continue;
+        FW_TRY(add_member(out, lost, fault));
+        x = lost.x1;
+    }
+    return FW_OK;
+}
+
+static fw_status list_lost(const spans *list, fw_member_runs *out, fw_fault *fault)
+{
+    size_t first = 0;
+    for (size_t i = 0; i < list->count; i++) {
+        while (list->item[first].x1 <= list->item[i].x0)
+            first++;
+        FW_TRY(add_lost(list, first, list->item[i], out, fault));
+    }
+    return FW_OK;
+}
+
+static fw_status list_members(canvas *c, fw_member_runs *out, fw_member_runs *lost, fw_fault *fault)
+{
     for (int32_t y = 0; y < out->height; y++) {
-        out->open_row = y;
-        FW_TRY(canvas_row(c, y, fault));
+        out->open_row = lost->open_row = y;
+        FW_TRY(canvas_gather(c, y, fault));
+        FW_TRY(list_lost(&c->raw, lost, fault));
+        FW_TRY(flatten(c, fault));
         for (size_t i = 0; i < c->flat.count; i++)
             FW_TRY(add_member(out, c->flat.item[i], fault));
         out->row[y + 1] = out->count;
+        lost->row[y + 1] = lost->count;
     }
-    out->open_row = out->height;
+    out->open_row = lost->open_row = out->height;
+    return FW_OK;
+}
+
+static fw_status begin_members(const fw_screen *screen, fw_member_runs *out, fw_fault *fault)
+{
+    out->width = screen->width;
+    out->height = screen->height;
+    out->count = 0;
+    FW_TRY(fw_grow((void **)&out->row, &out->row_capacity, (size_t)out->height + 1,
+                   sizeof *out->row, holder, fault));
+    out->row[0] = 0;
     return FW_OK;
 }
 
 fw_status fw_stamp_members(const fw_stamp_plan *plan, int32_t layer, fw_member_runs *out,
-                           fw_fault *fault)
+                           fw_member_runs *lost, fw_fault *fault)
 {
-    out->width = plan->screen.width;
-    out->height = plan->screen.height;
-    out->count = 0;
-    FW_TRY(fw_grow((void **)&out->row, &out->row_capacity, (size_t)out->height + 1,
-                   sizeof *out->row, holder, fault));
+    FW_TRY(begin_members(&plan->screen, out, fault));
+    FW_TRY(begin_members(&plan->screen, lost, fault));
     canvas c = {.plan = plan, .make_spans = make_member_spans};
     fw_status status = canvas_fill(&c, layer, true, fault);
     if (status == FW_OK)
-        status = list_members(&c, out, fault);
+        status = list_members(&c, out, lost, fault);
     canvas_free(&c);
     return status;
 }

@@ -49,9 +49,11 @@ typedef struct fw_member_runs {
 void fw_member_runs_free(fw_member_runs *members);
 
 /* out = footprints (fw_disc_footprint) of all posts that are still below their tip layer: layer <
- * tip_layer. Where two overlap the smaller index wins. */
+ * tip_layer. Where two overlap the smaller index wins; lost = what each of the others thereby lacks
+ * of its footprint. The runs of lost may overlap one another (three posts at one place) and ascend
+ * in no order within a row. */
 fw_status fw_stamp_members(const fw_stamp_plan *plan, int32_t layer, fw_member_runs *out,
-                           fw_fault *fault);
+                           fw_member_runs *lost, fw_fault *fault);
 
 /* out = the footprint of one post (index) in a layer, with or without the layers of its bite; empty
  * where it is not drawn. */

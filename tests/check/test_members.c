@@ -202,12 +202,79 @@ static void random_layers_against_a_map(void **state)
     }
 }
 
+static void push_claim(fw_member_runs *list, int32_t x, int32_t post)
+{
+    fw_member_run *last =
+        list->count > list->row[list->open_row] ? &list->run[list->count - 1] : NULL;
+    if (last != NULL && last->x1 == x && last->post == post)
+        last->x1++;
+    else
+        list->run[list->count++] = (fw_member_run){x, x + 1, post};
+}
+
+/* Random claims of five posts on the same pixels: the pairs against a count of pixels. */
+static void pairs_are_what_two_posts_claim(void **state)
+{
+    (void)state;
+    enum { POSTS = 5 };
+    uint64_t seed = 7;
+    for (int round = 0; round < 50; round++) {
+        int32_t from[HEIGHT][POSTS], to[HEIGHT][POSTS];
+        fw_member_runs owned = {.width = WIDTH, .height = HEIGHT}, lost = owned;
+        for (int k = 0; k < 2; k++) {
+            fw_member_runs *list = k == 0 ? &owned : &lost;
+            list->row = calloc(HEIGHT + 1, sizeof *list->row);
+            list->run = calloc(WIDTH * HEIGHT * POSTS, sizeof *list->run);
+            assert_non_null(list->row);
+            assert_non_null(list->run);
+        }
+        for (int32_t y = 0; y < HEIGHT; y++) {
+            owned.open_row = lost.open_row = y;
+            for (int p = 0; p < POSTS; p++) {
+                seed = seed * UINT64_C(6364136223846793005) + 1442695040888963407; /* Knuth MMIX */
+                from[y][p] = (int32_t)(seed >> 33) % WIDTH;
+                to[y][p] = from[y][p] + (int32_t)(seed >> 50) % 6;
+            }
+            for (int32_t x = 0; x < WIDTH; x++)
+                for (int p = 0, owner = -1; p < POSTS; p++) {
+                    if (x < from[y][p] || x >= to[y][p])
+                        continue;
+                    push_claim(owner < 0 ? &owned : &lost, x, p);
+                    owner = p;
+                }
+            owned.row[y + 1] = owned.count;
+            lost.row[y + 1] = lost.count;
+        }
+        fw_member_pairs pairs = {0};
+        assert_int_equal(fw_members_pairs(&owned, &lost, &pairs, NULL), FW_OK);
+        size_t next = 0;
+        for (int a = 0; a < POSTS; a++)
+            for (int b = a + 1; b < POSTS; b++) {
+                int64_t both = 0;
+                for (int32_t y = 0; y < HEIGHT; y++)
+                    for (int32_t x = 0; x < WIDTH; x++)
+                        both += x >= from[y][a] && x < to[y][a] && x >= from[y][b] && x < to[y][b];
+                if (both == 0)
+                    continue;
+                assert_true(next < pairs.count);
+                assert_int_equal(pairs.item[next].a, a);
+                assert_int_equal(pairs.item[next].b, b);
+                assert_int_equal(pairs.item[next++].pixels, both);
+            }
+        assert_int_equal(next, pairs.count);
+        free(pairs.item);
+        fw_member_runs_free(&owned);
+        fw_member_runs_free(&lost);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(knows_the_post_of_a_pixel),
                                        cmocka_unit_test(within_keeps_what_lies_in_the_set),
                                        cmocka_unit_test(sets_of_all_of_some_and_of_one),
                                        cmocka_unit_test(pieces_by_region_and_post),
-                                       cmocka_unit_test(random_layers_against_a_map)};
+                                       cmocka_unit_test(random_layers_against_a_map),
+                                       cmocka_unit_test(pairs_are_what_two_posts_claim)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

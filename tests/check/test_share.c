@@ -1,6 +1,8 @@
 /* Who carries the load: statics layer by layer, shares with known borders, what counts for whom. */
 #include "check/stage.h"
 
+#include "posts/profile.h"
+
 static const double pi = 3.14159265358979323846;
 
 /* Films worth a solve: at 100 um all that is drawn here, posts alone excepted, pulls more than a
@@ -413,6 +415,80 @@ static void a_post_up_to_the_end_holds_nothing(void **state)
     }
 }
 
+/* Solid pixels of a layer in the footprints of one post and of two, counted one by one. */
+static void count_footprints(const bench *b, int32_t layer, int64_t alone[2], int64_t *both)
+{
+    fw_greys greys = stage_layer(b->stage, layer);
+    fw_runs foot[2] = {{0}, {0}};
+    for (size_t p = 0; p < 2; p++)
+        assert_int_equal(fw_stamp_post(b->plan, p, layer, false, &foot[p], NULL), FW_OK);
+    alone[0] = alone[1] = *both = 0;
+    for (int32_t y = 0; y < b->stage->height; y++)
+        for (int32_t x = 0; x < b->stage->width; x++) {
+            const bool solid = fw_greys_at(&greys, x, y) >= b->setup.solid_least;
+            const bool in[2] = {fw_runs_find(&foot[0], x, y) != UINT32_MAX,
+                                fw_runs_find(&foot[1], x, y) != UINT32_MAX};
+            alone[0] += solid && in[0];
+            alone[1] += solid && in[1];
+            *both += solid && in[0] && in[1];
+        }
+    fw_runs_free(&foot[0]);
+    fw_runs_free(&foot[1]);
+    fw_greys_free(&greys);
+}
+
+/* Shafts that overlap carry each other's load in the share of their sections; at full overlap each
+ * carries the sum. Apart: nothing. Neither counts as a stub. */
+static void posts_on_one_shaft_carry_the_sum(void **state)
+{
+    (void)state;
+    for (int apart = 0; apart <= 12; apart += 2) {
+        stage s = thin_film(90, 30, 24);
+        stage_post(&s, 3.0, 1.5, 12, false);
+        stage_post(&s, 3.0 + 0.1 * apart, 1.5, 20, false);
+        fw_post *second = &s.posts.item[1]; /* leans over to a tip of its own */
+        second->point_count = 3;
+        second->path[2] = second->path[1];
+        second->path[1] = (fw_point){3.0 + 0.1 * apart, 1.5, 0.9};
+        second->path[0].x = 4.6;
+        stage_box(&s, 24, 8, 12, 34, 22, 14, 255);
+        stage_box(&s, 40, 8, 20, 80, 22, 24, 255);
+        stage_stamp(&s, true);
+        bench b;
+        bench_open(&b, &s);
+        double part[2] = {0}, least[2] = {INFINITY, INFINITY};
+        for (int n = 0; n < 24; n++) {
+            (void)bench_step(&b);
+            int64_t alone[2], both;
+            count_footprints(&b, n, alone, &both);
+            for (int p = 0; p < 2; p++) {
+                const fw_post *post = &s.posts.item[p];
+                if (n >= post->tip_layer || fw_post_zone(post, fw_post_middle(n, 0.1),
+                                                         fw_post_face(post, 0.1)) == FW_ZONE_NECK)
+                    continue;
+                least[p] = fmin(least[p], (double)alone[p] * 0.01);
+                if (both > 0)
+                    part[p] = fmax(part[p], (double)both / (double)alone[1 - p]);
+            }
+        }
+        fw_share_finish(&b.share, b.row);
+        const fw_post_account *account = b.share.post;
+        assert_true(account[0].demand.load_N[FW_POST_FOOT] > 0);
+        assert_true(account[1].demand.load_N[FW_POST_FOOT] > 0);
+        assert_int_equal(part[0] > 0, apart <= 10);
+        for (int p = 0; p < 2; p++) {
+            assert_int_equal(account[p].seen_layers, s.posts.item[p].tip_layer);
+            assert_near(account[p].section.area_mm2[FW_POST_SHAFT], least[p], 1e-9);
+            assert_near(account[p].demand.load_N[FW_POST_SHAFT],
+                        account[p].demand.load_N[FW_POST_FOOT] +
+                            part[p] * account[1 - p].demand.load_N[FW_POST_FOOT],
+                        1e-9);
+        }
+        bench_close(&b);
+        stage_free(&s);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(shares_add_up_to_the_load),
@@ -425,6 +501,7 @@ int main(void)
                                        cmocka_unit_test(a_tip_at_an_edge_counts_for_less),
                                        cmocka_unit_test(the_bite_brings_contact),
                                        cmocka_unit_test(a_post_under_nothing_holds_nothing),
-                                       cmocka_unit_test(a_post_up_to_the_end_holds_nothing)};
+                                       cmocka_unit_test(a_post_up_to_the_end_holds_nothing),
+                                       cmocka_unit_test(posts_on_one_shaft_carry_the_sum)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -181,6 +181,25 @@ static int32_t member_at(const fw_member_runs *members, int32_t x, int32_t y)
     return -1;
 }
 
+/* Every pixel of a post is either its own or lost, and never both nor twice. */
+static void check_lost(const fw_screen *screen, const fw_posts *posts, int32_t layer,
+                       const fw_member_runs *members, const fw_member_runs *lost)
+{
+    for (int32_t y = 0; y < HEIGHT; y++) {
+        for (int32_t x = 0; x < WIDTH; x++) {
+            const int32_t owner = member_at(members, x, y);
+            for (int32_t p = 0; p < (int32_t)posts->count; p++) {
+                int times = 0;
+                for (uint32_t i = lost->row[y]; i < lost->row[y + 1]; i++)
+                    times += lost->run[i].post == p && lost->run[i].x0 <= x && x < lost->run[i].x1;
+                const bool claims = layer < posts->item[p].tip_layer &&
+                                    dense_belongs(screen, &posts->item[p], layer, x, y);
+                assert_int_equal(times, claims && owner != p);
+            }
+        }
+    }
+}
+
 static void check_members(kind k, uint64_t seed)
 {
     dice d = {seed};
@@ -190,10 +209,12 @@ static void check_members(kind k, uint64_t seed)
     fw_screen screen = screen_of(k);
     fw_stamp_plan *plan = NULL;
     assert_int_equal(fw_stamp_plan_make(&posts, &screen, layer_mm, &plan, NULL), FW_OK);
-    fw_member_runs members = {0};
+    fw_member_runs members = {0}, lost = {0};
     for (int32_t layer = 0; layer < LAYERS; layer++) {
-        assert_int_equal(fw_stamp_members(plan, layer, &members, NULL), FW_OK);
+        assert_int_equal(fw_stamp_members(plan, layer, &members, &lost, NULL), FW_OK);
         assert_int_equal(members.row[HEIGHT], members.count);
+        assert_int_equal(lost.row[HEIGHT], lost.count);
+        check_lost(&screen, &posts, layer, &members, &lost);
         for (int32_t y = 0; y < HEIGHT; y++) {
             for (int32_t x = 0; x < WIDTH; x++)
                 assert_int_equal(member_at(&members, x, y),
@@ -205,6 +226,7 @@ static void check_members(kind k, uint64_t seed)
         }
     }
     fw_member_runs_free(&members);
+    fw_member_runs_free(&lost);
     fw_stamp_plan_free(plan);
 }
 
