@@ -5,6 +5,7 @@
 #include "fault/memory.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 
 static const char holder[] = "judge";
@@ -208,18 +209,36 @@ static fw_status peel_sheets(const phase *batch, int32_t count, fw_fault *fault)
     return batch->judge->placer != NULL ? FW_OK : run_phase(batch, range_sheet, count, fault);
 }
 
-static void book_layer(fw_judge *judge, const fw_sheet *sheet)
+static fw_status note_coarse(fw_judge *judge, const fw_sheet *sheet, fw_fault *fault)
+{
+    const int32_t cell_px = sheet->peel.coarse_px;
+    if (cell_px == 0)
+        return FW_OK;
+    fw_finding finding = {.kind = FW_COARSE_FILM,
+                          .severity = FW_WARN,
+                          .layer = sheet->layer,
+                          .margin = NAN,
+                          .post = -1,
+                          .badness = cell_px};
+    (void)snprintf(finding.message, sizeof finding.message,
+                   "peel load solved on cells of %d px, coarser than its accuracy asks for",
+                   (int)cell_px);
+    return fw_findings_add(&judge->findings, &finding, fault);
+}
+
+static fw_status book_layer(fw_judge *judge, const fw_sheet *sheet, fw_fault *fault)
 {
     const int64_t part = fw_runs_pixels(fw_sheet_part(sheet));
     judge->part_px += (double)part;
     judge->support_px += (double)(fw_runs_pixels(&sheet->slice.intended) - part);
     if (!judge->setup.loads)
-        return;
+        return FW_OK;
     fw_layer_row *row = &judge->row[sheet->layer];
     row->peel_N = sheet->peel.force_N;
     row->limited_by = sheet->peel.limited_by;
     for (int end = 0; end < 2; end++)
         judge->range_N[end] = fmax(judge->range_N[end], sheet->peel.range_N[end]);
+    return note_coarse(judge, sheet, fault);
 }
 
 static fw_status ground_sheets(fw_judge *judge, int32_t count, fw_fault *fault)
@@ -240,7 +259,7 @@ static fw_status share_sheets(fw_judge *judge, int32_t count, fw_fault *fault)
         FW_TRY(fw_share_step(&judge->share, sheet, sheet_before(judge, slot), judge->row, fault));
         if (judge->plan != NULL)
             FW_TRY(fw_clearance_step(&judge->clearance, sheet, &judge->findings, fault));
-        book_layer(judge, sheet);
+        FW_TRY(book_layer(judge, sheet, fault));
     }
     return FW_OK;
 }

@@ -66,9 +66,13 @@ static void sum_up(fw_peel *out)
 {
     out->force_N = 0;
     out->limited_by = FW_BY_NOTHING;
+    out->coarse_px = 0;
     for (uint32_t c = 0; c < out->count; c++) {
         const fw_cluster *cluster = &out->cluster[c];
+        const fw_film_solution *solution = cluster->solution;
         out->force_N += cluster->force_N;
+        if (solution != NULL && solution->coarse && solution->cell_px > out->coarse_px)
+            out->coarse_px = solution->cell_px;
         const bool stronger = cluster->limited_by == FW_BY_CAP ||
                               (cluster->limited_by == FW_BY_FILM && out->limited_by != FW_BY_CAP) ||
                               out->limited_by == FW_BY_NOTHING;

@@ -39,6 +39,7 @@ typedef struct fw_peel {
     size_t of_region_capacity, of_void_capacity, cavity_of_capacity;
     double force_N, range_N[2];
     fw_limit limited_by;
+    int32_t coarse_px; /* cells of the coarsest film solved on coarser ones than asked; 0: none */
 } fw_peel;
 
 /* Finds the clusters of a layer, solves them through the memo at the card's gap, and sums their

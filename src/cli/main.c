@@ -4,6 +4,9 @@
 
 #include <stdio.h>
 #include <string.h>
+#ifdef __GLIBC__
+#include <malloc.h>
+#endif
 
 static const fw_command *const commands[] = {&fw_command_begin, &fw_command_survey,
                                              &fw_command_prop, &fw_command_recheck};
@@ -39,8 +42,19 @@ static int run_command(const fw_command *command, int count, char **words)
     return fw_say_done(FALSEWORK_OK);
 }
 
+/* The C library of GNU keeps freed blocks of up to 32 MiB in a heap for each thread, once blocks of
+ * that size came and went. Film solves do, and what memory is bounded to must not depend on
+ * threads: so blocks from 4 MiB on always go back. */
+static void give_memory_back(void)
+{
+#ifdef __GLIBC__
+    (void)mallopt(M_MMAP_THRESHOLD, 4 << 20);
+#endif
+}
+
 int main(int count, char **words)
 {
+    give_memory_back();
     fw_say_catch_signals();
     if (count < 2) {
         fw_say("no command, command line, see falsework --help");

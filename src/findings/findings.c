@@ -53,6 +53,9 @@ static const kind_row kinds[FW_KIND_COUNT] = {
     [FW_ASSUMED_VALUE] = {"assumed-value",
                           "a card value is assumed, not measured: the margins rest "
                           "on it"},
+    [FW_COARSE_FILM] = {"coarse-film",
+                        "the film is too finely cut for the memory allowed and was solved on "
+                        "coarser cells: its load is some percent off, mostly too high"},
     [FW_UNSETTLED] = {"unsettled", "loads and sizes did not agree within the allowed rounds"},
 };
 

@@ -26,6 +26,7 @@ typedef enum fw_kind {
     FW_NEW_VOID,
     FW_BORDER_SOLID,
     FW_ASSUMED_VALUE,
+    FW_COARSE_FILM,
     FW_UNSETTLED,
     FW_KIND_COUNT
 } fw_kind;

@@ -30,6 +30,20 @@ void fw_film_grid_free(fw_film_grid *grid)
     *grid = (fw_film_grid){0};
 }
 
+void fw_film_grid_drop_faces(fw_film_grid *grid)
+{
+    free(grid->face);
+    grid->face = NULL;
+    grid->face_count = grid->face_capacity = 0;
+}
+
+void fw_film_grid_drop_links(fw_film_grid *grid)
+{
+    free(grid->link);
+    grid->link = NULL;
+    grid->link_count = grid->link_capacity = 0;
+}
+
 static fw_status grow_nodes(fw_film_grid *grid, size_t need, fw_fault *fault)
 {
     size_t *capacity = grid->node_capacity;
@@ -312,26 +326,30 @@ static fw_status add_cavities(const cutter *cut)
     return FW_OK;
 }
 
-static fw_status cut_all(cutter *cut)
+static fw_status cut_all(cutter *cut, uint32_t most, bool *fits)
 {
     const fw_runs *film = &cut->shape->film;
     FW_TRY(fw_film_band_begin(&cut->now, film->width, cut->grid->block, cut->fault));
     FW_TRY(fw_film_band_begin(&cut->before, film->width, cut->grid->block, cut->fault));
-    for (int32_t y0 = 0; y0 < film->height; y0 += cut->grid->block)
+    for (int32_t y0 = 0; y0 < film->height && cut->grid->cells <= most; y0 += cut->grid->block)
         FW_TRY(cut_band(cut, y0));
+    *fits = cut->grid->cells <= most;
+    if (!*fits)
+        return FW_OK;
     FW_TRY(add_cavities(cut));
     return fw_film_sides_merge(cut->grid, cut->fault);
 }
 
-fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, fw_film_grid *out,
-                             fw_fault *fault)
+fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, uint32_t most,
+                             fw_film_grid *out, bool *fits, fw_fault *fault)
 {
     *out = (fw_film_grid){.block = block, .ratio = shape->py_mm / shape->px_mm};
     cutter cut = {.shape = shape, .grid = out, .fault = fault};
-    fw_status status = cut_all(&cut);
+    *fits = false;
+    fw_status status = cut_all(&cut, most, fits);
     fw_film_band_free(&cut.now);
     fw_film_band_free(&cut.before);
-    if (status != FW_OK)
+    if (status != FW_OK || !*fits)
         fw_film_grid_free(out);
     return status;
 }

@@ -46,9 +46,12 @@ typedef struct fw_film_grid {
     size_t node_capacity[5], face_capacity, link_capacity; /* items */
 } fw_film_grid;
 
-/* Cuts the shape into *out (zeroed or freed before). Frees what it made on failure. */
-fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, fw_film_grid *out,
-                             fw_fault *fault);
+/* Cuts the shape into *out (zeroed or freed before). *fits tells whether `most` cells were enough;
+ * if not, it stopped there, and there is no grid. Frees what it made on failure. */
+fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, uint32_t most,
+                             fw_film_grid *out, bool *fits, fw_fault *fault);
+void fw_film_grid_drop_faces(fw_film_grid *grid);
+void fw_film_grid_drop_links(fw_film_grid *grid);
 void fw_film_grid_free(fw_film_grid *grid);
 
 #endif

@@ -18,17 +18,25 @@ static fw_status indices(uint32_t **out, size_t count, fw_fault *fault)
     return fw_allocate((void **)out, count, sizeof(uint32_t), holder, fault);
 }
 
+/* What every level has of its own; the finest takes its nodes from the grid. */
 static fw_status allocate_nodes(fw_film_level *level, fw_fault *fault)
 {
     size_t n = level->nodes;
-    double **array[] = {&level->wall,      &level->source,  &level->x,           &level->y,
-                        &level->area,      &level->to_held, &level->wall_factor, &level->inverse,
-                        &level->held_wall, &level->load,    &level->solution,    &level->rest};
+    double **array[] = {&level->wall, &level->source, &level->inverse, &level->rest};
     for (size_t i = 0; i < sizeof array / sizeof *array; i++)
         FW_TRY(numbers(array[i], n, fault));
     FW_TRY(indices(&level->row, n + 1, fault));
     FW_TRY(indices(&level->coarse_node, n, fault));
-    FW_TRY(fw_allocate((void **)&level->cavity, n, sizeof *level->cavity, holder, fault));
+    return fw_allocate((void **)&level->cavity, n, sizeof *level->cavity, holder, fault);
+}
+
+static fw_status allocate_coarser(fw_film_level *level, fw_fault *fault)
+{
+    size_t n = level->nodes;
+    double **array[] = {&level->x, &level->y, &level->area, &level->solution, &level->load};
+    FW_TRY(allocate_nodes(level, fault));
+    for (size_t i = 0; i < sizeof array / sizeof *array; i++)
+        FW_TRY(numbers(array[i], n, fault));
     FW_TRY(fw_allocate((void **)&level->block_x, n, sizeof *level->block_x, holder, fault));
     return fw_allocate((void **)&level->block_y, n, sizeof *level->block_y, holder, fault);
 }
@@ -36,10 +44,7 @@ static fw_status allocate_nodes(fw_film_level *level, fw_fault *fault)
 static fw_status allocate_entries(fw_film_level *level, size_t entries, fw_fault *fault)
 {
     FW_TRY(indices(&level->col, entries, fault));
-    FW_TRY(indices(&level->coarse_entry, entries, fault));
-    FW_TRY(numbers(&level->conductance, entries, fault));
-    FW_TRY(numbers(&level->held_conductance, entries, fault));
-    return numbers(&level->entry_factor, entries, fault);
+    return numbers(&level->conductance, entries, fault);
 }
 
 static void free_level(fw_film_level *level)
@@ -59,13 +64,13 @@ static void free_level(fw_film_level *level)
                      level->coarse_entry,
                      level->entry_factor,
                      level->wall_factor,
-                     level->held_conductance,
-                     level->held_wall,
-                     level->to_held,
+                     level->cut_wall,
+                     level->cut_to_held,
                      level->inverse,
                      level->solution,
                      level->load,
-                     level->rest};
+                     level->rest,
+                     level->cut_conductance};
     for (size_t i = 0; i < sizeof array / sizeof *array; i++)
         free(array[i]);
     *level = (fw_film_level){0};
@@ -80,14 +85,17 @@ void fw_film_levels_free(fw_film_levels *levels)
 
 /* ---- the finest level ---- */
 
-static void copy_nodes(const fw_film_grid *grid, fw_film_level *level)
+static void take_nodes(fw_film_grid *grid, fw_film_level *level)
 {
+    level->area = grid->area;
+    level->x = grid->x;
+    level->y = grid->y;
+    level->block_x = grid->block_x;
+    level->block_y = grid->block_y;
+    grid->area = grid->x = grid->y = NULL;
+    grid->block_x = grid->block_y = NULL;
     for (uint32_t i = 0; i < level->nodes; i++) {
-        level->area[i] = level->source[i] = grid->area[i];
-        level->x[i] = grid->x[i];
-        level->y[i] = grid->y[i];
-        level->block_x[i] = grid->block_x[i];
-        level->block_y[i] = grid->block_y[i];
+        level->source[i] = level->area[i];
         level->cavity[i] = i >= grid->cells;
     }
 }
@@ -101,7 +109,7 @@ static void shift_source(const fw_film_grid *grid, fw_film_level *level)
         double sum = 0;
         for (end = i; end < grid->link_count && grid->link[end].cell == cell; end++)
             sum += grid->link[end].length * grid->link[end].distance;
-        double scale = sum > grid->area[cell] ? share * grid->area[cell] / sum : share;
+        double scale = sum > level->area[cell] ? share * level->area[cell] / sum : share;
         level->source[cell] -= scale * sum;
         for (size_t k = i; k < end; k++) {
             if (grid->link[k].target != FW_FILM_VAT)
@@ -168,7 +176,8 @@ static void fill_entries(const fw_film_grid *grid, fw_film_level *level, uint32_
     memcpy(cursor, level->row, level->nodes * sizeof *cursor);
     for (size_t i = 0; i < grid->face_count; i++) {
         fw_film_face face = grid->face[i];
-        put(level, cursor, face.a, face.b, face.length / between(grid->x, grid->y, face.a, face.b));
+        put(level, cursor, face.a, face.b,
+            face.length / between(level->x, level->y, face.a, face.b));
     }
     for (size_t i = 0; i < grid->link_count; i++) {
         fw_film_link side = grid->link[i];
@@ -179,16 +188,17 @@ static void fill_entries(const fw_film_grid *grid, fw_film_level *level, uint32_
     }
 }
 
-static fw_status build_finest(const fw_film_grid *grid, fw_film_level *level, fw_fault *fault)
+static fw_status build_finest(fw_film_grid *grid, fw_film_level *level, fw_fault *fault)
 {
     level->nodes = grid->cells + grid->cavities;
     FW_TRY(allocate_nodes(level, fault));
-    copy_nodes(grid, level);
+    take_nodes(grid, level);
     shift_source(grid, level);
     count_entries(grid, level);
     FW_TRY(allocate_entries(level, level->row[level->nodes], fault));
     fill_entries(grid, level, level->coarse_node); /* free until the next level is made */
     merge_rows(level, level->coarse_node);
+    fw_film_grid_drop_faces(grid);
     return FW_OK;
 }
 
@@ -232,6 +242,7 @@ static uint32_t group_nodes(fw_film_level *fine, bool joint)
     return groups;
 }
 
+/* A coarse wall is the sum of the fine ones for now. */
 static void gather_nodes(const fw_film_level *fine, fw_film_level *coarse)
 {
     for (uint32_t i = 0; i < fine->nodes; i++) {
@@ -240,7 +251,7 @@ static void gather_nodes(const fw_film_level *fine, fw_film_level *coarse)
         coarse->x[c] += fine->area[i] * fine->x[i];
         coarse->y[c] += fine->area[i] * fine->y[i];
         coarse->source[c] += fine->source[i];
-        coarse->wall_factor[c] += fine->wall[i]; /* the sum for now */
+        coarse->wall[c] += coarse->joint ? fine->wall[i] : 0;
         coarse->block_x[c] = fine->block_x[i] / 2;
         coarse->block_y[c] = fine->block_y[i] / 2;
         coarse->cavity[c] = !coarse->joint && fine->cavity[i];
@@ -250,6 +261,12 @@ static void gather_nodes(const fw_film_level *fine, fw_film_level *coarse)
         coarse->y[c] /= coarse->area[c];
     }
 }
+
+/* Scratch of the passage from one level to the next. */
+typedef struct gathering {
+    uint32_t *start, *member; /* see list_members */
+    uint32_t *seen;           /* [coarse] entry of the row at hand */
+} gathering;
 
 /* member[start[c]] .. are the fine nodes of coarse node c. start: [coarse + 1], zeroed. */
 static void list_members(const fw_film_level *fine, uint32_t coarse_nodes, uint32_t *start,
@@ -266,27 +283,25 @@ static void list_members(const fw_film_level *fine, uint32_t coarse_nodes, uint3
     start[0] = 0;
 }
 
-/* Makes row c of the coarse matrix: entry_factor gets the sum of the fine conductances, conductance
- * the sum of conductance times distance. */
-static void gather_row(fw_film_level *fine, fw_film_level *coarse, uint32_t c,
-                       const uint32_t *start, const uint32_t *member, uint32_t *seen)
+/* Makes row c of the coarse matrix: sum gets the sum of the fine conductances, conductance the sum
+ * of conductance times distance. */
+static void gather_row(const fw_film_level *fine, fw_film_level *coarse, uint32_t c,
+                       const gathering *by, double *sum)
 {
-    uint32_t begin = coarse->row[c], end = begin;
-    for (uint32_t m = start[c]; m < start[c + 1]; m++) {
-        uint32_t i = member[m];
+    uint32_t begin = coarse->row[c], end = begin, *seen = by->seen;
+    for (uint32_t m = by->start[c]; m < by->start[c + 1]; m++) {
+        uint32_t i = by->member[m];
         for (uint32_t e = fine->row[i]; e < fine->row[i + 1]; e++) {
             uint32_t to = fine->coarse_node[fine->col[e]];
-            fine->coarse_entry[e] = FW_FILM_VAT;
             if (to == c)
                 continue;
             if (seen[to] == UINT32_MAX || seen[to] < begin) {
                 seen[to] = end;
                 coarse->col[end] = to;
-                coarse->entry_factor[end] = coarse->conductance[end] = 0;
+                sum[end] = coarse->conductance[end] = 0;
                 end++;
             }
-            fine->coarse_entry[e] = seen[to];
-            coarse->entry_factor[seen[to]] += fine->conductance[e];
+            sum[seen[to]] += fine->conductance[e];
             coarse->conductance[seen[to]] +=
                 fine->conductance[e] * between(fine->x, fine->y, i, fine->col[e]);
         }
@@ -301,24 +316,24 @@ static double held_within(double value, double low, double high)
 
 /* Conductances between cells from the coarse geometry; on a joint level one half of the sum, the
  * value for blocks of a regular network; to cavities zero, the sides are added later. */
-static void set_conductances(fw_film_level *coarse)
+static void set_conductances(fw_film_level *coarse, const double *sum)
 {
     for (uint32_t c = 0; c < coarse->nodes; c++) {
         for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++) {
             uint32_t to = coarse->col[e];
-            double sum = coarse->entry_factor[e];
+            double *value = &coarse->conductance[e];
             if (coarse->joint)
-                coarse->conductance[e] = 0.5 * sum;
+                *value = 0.5 * sum[e];
             else if (coarse->cavity[c] || coarse->cavity[to])
-                coarse->conductance[e] = 0;
+                *value = 0;
             else
-                coarse->conductance[e] = held_within(
-                    coarse->conductance[e] / between(coarse->x, coarse->y, c, to), 0.5 * sum, sum);
+                *value = held_within(*value / between(coarse->x, coarse->y, c, to), 0.5 * sum[e],
+                                     sum[e]);
         }
     }
 }
 
-static uint32_t entry_of(const fw_film_level *level, uint32_t i, uint32_t j)
+uint32_t fw_film_level_entry(const fw_film_level *level, uint32_t i, uint32_t j)
 {
     uint32_t e = level->row[i];
     while (level->col[e] != j)
@@ -341,44 +356,35 @@ static void move_sides(fw_film_grid *grid, const fw_film_level *fine, fw_film_le
             continue;
         }
         side->target = fine->coarse_node[side->target];
-        coarse->conductance[entry_of(coarse, to, side->target)] += side->length / side->distance;
+        coarse->conductance[fw_film_level_entry(coarse, to, side->target)] +=
+            side->length / side->distance;
     }
     for (uint32_t c = 0; c < coarse->nodes; c++) {
         if (!coarse->cavity[c])
             continue;
         for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++)
-            coarse->conductance[e] = coarse->conductance[entry_of(coarse, coarse->col[e], c)];
+            coarse->conductance[e] =
+                coarse->conductance[fw_film_level_entry(coarse, coarse->col[e], c)];
     }
 }
 
-static void set_factors(fw_film_level *coarse)
+static fw_status build_coarser(fw_film_grid *grid, const fw_film_level *fine, fw_film_level *coarse,
+                               const gathering *by, fw_fault *fault)
 {
-    for (uint32_t c = 0; c < coarse->nodes; c++) {
-        if (coarse->joint)
-            coarse->wall[c] = coarse->wall_factor[c];
-        coarse->wall_factor[c] =
-            coarse->wall_factor[c] > 0 ? coarse->wall[c] / coarse->wall_factor[c] : 1;
-        for (uint32_t e = coarse->row[c]; e < coarse->row[c + 1]; e++)
-            coarse->entry_factor[e] = coarse->conductance[e] / coarse->entry_factor[e];
-    }
-}
-
-static fw_status build_coarser(fw_film_grid *grid, fw_film_level *fine, fw_film_level *coarse,
-                               uint32_t *scratch[3], fw_fault *fault)
-{
-    uint32_t *start = scratch[0], *member = scratch[1], *seen = scratch[2];
-    FW_TRY(allocate_nodes(coarse, fault));
+    double *sum = NULL;
+    FW_TRY(allocate_coarser(coarse, fault));
     FW_TRY(allocate_entries(coarse, fine->row[fine->nodes], fault));
+    FW_TRY(numbers(&sum, fine->row[fine->nodes], fault));
     gather_nodes(fine, coarse);
-    memset(start, 0, ((size_t)coarse->nodes + 1) * sizeof *start);
-    memset(seen, 0xff, coarse->nodes * sizeof *seen);
-    list_members(fine, coarse->nodes, start, member);
+    memset(by->start, 0, ((size_t)coarse->nodes + 1) * sizeof *by->start);
+    memset(by->seen, 0xff, coarse->nodes * sizeof *by->seen);
+    list_members(fine, coarse->nodes, by->start, by->member);
     for (uint32_t c = 0; c < coarse->nodes; c++)
-        gather_row(fine, coarse, c, start, member, seen);
-    set_conductances(coarse);
+        gather_row(fine, coarse, c, by, sum);
+    set_conductances(coarse, sum);
+    free(sum);
     if (!coarse->joint)
         move_sides(grid, fine, coarse);
-    set_factors(coarse);
     return FW_OK;
 }
 
@@ -399,7 +405,7 @@ static bool want_joint(const fw_film_level *fine)
     return fine->joint || fine->nodes < 3 * cavities;
 }
 
-static fw_status build_all(fw_film_grid *grid, fw_film_levels *out, uint32_t *scratch[3],
+static fw_status build_all(fw_film_grid *grid, fw_film_levels *out, const gathering *by,
                            fw_fault *fault)
 {
     while (out->count < FW_FILM_LEVELS) {
@@ -409,23 +415,41 @@ static fw_status build_all(fw_film_grid *grid, fw_film_levels *out, uint32_t *sc
         bool joint = want_joint(fine);
         *coarse = (fw_film_level){.nodes = group_nodes(fine, joint), .joint = joint};
         out->count++;
-        FW_TRY(build_coarser(grid, fine, coarse, scratch, fault));
+        FW_TRY(build_coarser(grid, fine, coarse, by, fault));
     }
     return FW_OK;
 }
 
+/* What only building needs. */
+static void drop_scaffold(fw_film_grid *grid, fw_film_levels *levels)
+{
+    fw_film_grid_drop_links(grid);
+    for (uint32_t l = 0; l < levels->count; l++) {
+        free(levels->level[l].block_x);
+        free(levels->level[l].block_y);
+        levels->level[l].block_x = levels->level[l].block_y = NULL;
+    }
+}
+
 fw_status fw_film_levels_build(fw_film_grid *grid, fw_film_levels *out, fw_fault *fault)
 {
-    uint32_t *scratch[3] = {0};
+    gathering by = {0};
     out->count = 1;
     out->level[0] = (fw_film_level){0};
     fw_status status = build_finest(grid, &out->level[0], fault);
-    for (int i = 0; i < 3 && status == FW_OK; i++)
-        status = indices(&scratch[i], (size_t)out->level[0].nodes + 1, fault);
+    const size_t nodes = (size_t)out->level[0].nodes + 1;
     if (status == FW_OK)
-        status = build_all(grid, out, scratch, fault);
-    for (int i = 0; i < 3; i++)
-        free(scratch[i]);
+        status = indices(&by.start, nodes, fault);
+    if (status == FW_OK)
+        status = indices(&by.member, nodes, fault);
+    if (status == FW_OK)
+        status = indices(&by.seen, nodes, fault);
+    if (status == FW_OK)
+        status = build_all(grid, out, &by, fault);
+    free(by.start);
+    free(by.member);
+    free(by.seen);
+    drop_scaffold(grid, out);
     if (status != FW_OK)
         fw_film_levels_free(out);
     return status;

@@ -26,14 +26,17 @@ typedef struct fw_film_level {
     double *conductance;           /* [row[nodes]] of all nodes free */
     double *wall;                  /* [nodes] */
     double *source, *x, *y, *area; /* [nodes] area-weighted centroids */
-    int32_t *block_x, *block_y;
-    bool *cavity;           /* [nodes] is a cavity that has not joined */
-    uint32_t *coarse_node;  /* [nodes] of the next level */
+    int32_t *block_x, *block_y;    /* [nodes] while the levels are built */
+    bool *cavity;                  /* [nodes] is a cavity that has not joined */
+    uint32_t *coarse_node;         /* [nodes] of the next level */
+    /* The matrix that the cycle uses: the one above, or `cut` with some nodes held. */
+    const double *held_conductance, *held_wall, *to_held; /* to_held: NULL = none is held */
+    double *inverse;                                      /* 1 / diagonal, 0 = held */
+    double *solution, *load, *rest; /* vectors of the cycle; the finest level has only rest */
+    /* only after fw_film_levels_may_hold: */
     uint32_t *coarse_entry; /* [row[nodes]] entry of the next level, or FW_FILM_VAT inside a node */
     double *entry_factor, *wall_factor; /* of this level over the sums of the finer one */
-    /* with some nodes held: */
-    double *held_conductance, *held_wall, *to_held, *inverse; /* inverse: 1 / diagonal, 0 = held */
-    double *solution, *load, *rest;                           /* vectors of the cycle */
+    double *cut_conductance, *cut_wall, *cut_to_held;
 } fw_film_level;
 
 typedef struct fw_film_levels {
@@ -42,13 +45,19 @@ typedef struct fw_film_levels {
     double factor[FW_FILM_DIRECT * FW_FILM_DIRECT]; /* Cholesky factor of the last level */
 } fw_film_levels;
 
-/* Builds all levels into *out. Moves the links of grid to the coarsest level. */
+/* Builds all levels into *out from what grid holds, which then is gone: level[0] has the nodes. */
 fw_status fw_film_levels_build(fw_film_grid *grid, fw_film_levels *out, fw_fault *fault);
 void fw_film_levels_free(fw_film_levels *levels);
 
-/* Sets up the levels from `first` on, with the nodes of `first` where held[i] dropped (NULL: none
- * is). */
+/* Makes room for held nodes: half as much again as the levels take without. Once is enough. */
+fw_status fw_film_levels_may_hold(fw_film_levels *levels, fw_fault *fault);
+
+/* Sets up the levels from `first` on, with the nodes of `first` where held[i] dropped, after
+ * fw_film_levels_may_hold; NULL: none is, and no room is needed. */
 void fw_film_levels_hold(fw_film_levels *levels, uint32_t first, const bool *held);
+
+/* The entry of row i with column j, which must be there. */
+uint32_t fw_film_level_entry(const fw_film_level *level, uint32_t i, uint32_t j);
 
 /* rest = load - A u on one level with its held nodes dropped. */
 void fw_film_level_rest(const fw_film_level *level, const double *u, const double *load,

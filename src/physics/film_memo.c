@@ -1,10 +1,12 @@
 #include "physics/film_memo.h"
 
+#include "fault/quota.h"
+
 #include <omp.h>
 #include <stdlib.h>
 #include <string.h>
 
-enum { BUCKETS = 4096 };
+enum { BUCKETS = 4096, AT_ONCE = 320 << 20 }; /* bytes of films that are being solved */
 
 static const char holder[] = "memo of peel films";
 
@@ -28,6 +30,7 @@ typedef struct entry {
 
 struct fw_film_memo {
     fw_budget *budget;
+    fw_quota *at_once;
     omp_lock_t lock; /* held for look-ups and inserts only, never while solving */
     entry *bucket[BUCKETS];
     entry *aside;
@@ -35,9 +38,16 @@ struct fw_film_memo {
 
 fw_status fw_film_memo_create(fw_budget *budget, fw_film_memo **out, fw_fault *fault)
 {
-    FW_TRY(fw_allocate((void **)out, 1, sizeof **out, holder, fault));
-    (*out)->budget = budget;
-    omp_init_lock(&(*out)->lock);
+    fw_film_memo *memo = NULL;
+    FW_TRY(fw_allocate((void **)&memo, 1, sizeof *memo, holder, fault));
+    const fw_status status = fw_quota_create(AT_ONCE, &memo->at_once, fault);
+    if (status != FW_OK) {
+        free(memo);
+        return status;
+    }
+    memo->budget = budget;
+    omp_init_lock(&memo->lock);
+    *out = memo;
     return FW_OK;
 }
 
@@ -65,6 +75,7 @@ void fw_film_memo_free(fw_film_memo *memo)
         free_list(memo, &memo->bucket[b]);
     free_list(memo, &memo->aside);
     omp_destroy_lock(&memo->lock);
+    fw_quota_free(memo->at_once);
     free(memo);
 }
 
@@ -193,12 +204,17 @@ static entry *keep(fw_film_memo *memo, entry *new)
     return old;
 }
 
-static fw_status compute(const fw_film_shape *shape, const fw_film_options *options, double limit,
-                         bool curve, entry *new, fw_fault *fault)
+static fw_status compute(fw_film_memo *memo, const fw_film_shape *shape,
+                         const fw_film_options *options, double limit, bool curve, entry *new,
+                         fw_fault *fault)
 {
-    if (curve)
-        return fw_film_curve_build(shape, options, limit, NULL, &new->curve, fault);
-    return fw_film_solve(shape, options, &new->solution, fault);
+    const size_t bytes = fw_film_work_bytes(shape, options);
+    fw_quota_take(memo->at_once, bytes);
+    const fw_status status =
+        curve ? fw_film_curve_build(shape, options, limit, NULL, &new->curve, fault)
+              : fw_film_solve(shape, options, &new->solution, fault);
+    fw_quota_give(memo->at_once, bytes);
+    return status;
 }
 
 static fw_status ask(fw_film_memo *memo, const fw_film_shape *shape, const fw_film_options *options,
@@ -215,7 +231,7 @@ static fw_status ask(fw_film_memo *memo, const fw_film_shape *shape, const fw_fi
         free(new);
         return FW_OK;
     }
-    fw_status status = compute(shape, options, limit, curve, new, fault);
+    fw_status status = compute(memo, shape, options, limit, curve, new, fault);
     if (status != FW_OK) {
         free(new);
         return status;

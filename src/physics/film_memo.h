@@ -5,6 +5,8 @@
  * compared in full on a hit. A result is a pure function of its key, so a memo that is on, off,
  * full or shared by any number of threads never changes a byte of what it hands out.
  *
+ * Films that are solved at the same time take 320 MiB at most, or one of them alone: others wait.
+ *
  * Ownership: the memo owns all that it hands out. A pointer stays valid until the next
  * fw_film_memo_trim or fw_film_memo_free, also when the budget is full: what does not fit is
  * kept aside, charged past the limit, and freed at the next trim.

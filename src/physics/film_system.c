@@ -77,15 +77,18 @@ static uint32_t reach_open(const fw_film_level *level, uint32_t *queue, bool *re
 static fw_status check_open(const fw_film_system *system, fw_fault *fault)
 {
     const fw_film_level *level = &system->levels->level[0];
-    uint32_t *queue = NULL;
+    uint32_t *queue = NULL, lost = 0;
+    bool *reached = NULL;
     FW_TRY(fw_allocate((void **)&queue, level->nodes, sizeof *queue, holder, fault));
-    uint32_t reached = reach_open(level, queue, system->held);
-    free(queue);
-    if (reached == level->nodes)
-        return FW_OK;
-    uint32_t lost = 0;
-    while (system->held[lost])
+    fw_status status = fw_allocate((void **)&reached, level->nodes, sizeof *reached, holder, fault);
+    if (status == FW_OK && reach_open(level, queue, reached) == level->nodes)
+        lost = level->nodes;
+    while (status == FW_OK && lost < level->nodes && reached[lost])
         lost++;
+    free(queue);
+    free(reached);
+    if (status != FW_OK || lost == level->nodes)
+        return status;
     return fw_fault_set(fault, FW_INPUT,
                         "film or cavity without a way to an open edge, peel film near pixel "
                         "(%.0f, %.0f), seal no cavity at the edge of the box",
@@ -95,12 +98,38 @@ static fw_status check_open(const fw_film_system *system, fw_fault *fault)
 static fw_status allocate_fields(fw_film_system *system, fw_fault *fault)
 {
     size_t n = system->levels->level[0].nodes;
-    double **field[] = {&system->u,       &system->rest,  &system->step,      &system->direction,
-                        &system->product, &system->trial, &system->correction};
+    double **field[] = {&system->u, &system->rest, &system->step, &system->direction,
+                        &system->product};
     for (size_t i = 0; i < sizeof field / sizeof *field; i++)
         FW_TRY(fw_allocate((void **)field[i], n, sizeof(double), holder, fault));
+    return FW_OK;
+}
+
+/* What only a film at its cap needs; few are. */
+static fw_status make_room(fw_film_system *system, fw_fault *fault)
+{
+    size_t n = system->levels->level[0].nodes;
+    if (system->trial != NULL)
+        return FW_OK;
+    FW_TRY(fw_film_levels_may_hold(system->levels, fault));
     FW_TRY(fw_allocate((void **)&system->held, n, sizeof(bool), holder, fault));
-    return fw_allocate((void **)&system->was_held, n, sizeof(bool), holder, fault);
+    FW_TRY(fw_allocate((void **)&system->was_held, n, sizeof(bool), holder, fault));
+    FW_TRY(fw_allocate((void **)&system->correction, n, sizeof(double), holder, fault));
+    return fw_allocate((void **)&system->trial, n, sizeof(double), holder, fault);
+}
+
+static fw_status cut_grid(const fw_film_shape *shape, const fw_film_options *options,
+                          fw_film_system *out, fw_fault *fault)
+{
+    bool fits = false;
+    if (options->cell_px > 0)
+        return fw_film_grid_build(shape, options->cell_px, UINT32_MAX, &out->grid, &fits, fault);
+    const int32_t chosen = fw_film_choose_cell(shape);
+    for (int32_t block = chosen; !fits; block *= 2) {
+        FW_TRY(fw_film_grid_build(shape, block, FW_FILM_MOST_CELLS, &out->grid, &fits, fault));
+        out->coarse = block > chosen;
+    }
+    return FW_OK;
 }
 
 static fw_status build(const fw_film_shape *shape, const fw_film_options *options,
@@ -109,8 +138,7 @@ static fw_status build(const fw_film_shape *shape, const fw_film_options *option
     FW_TRY(check_sizes(shape, fault));
     FW_TRY(check_cavities(shape, fault));
     FW_TRY(check_options(options, fault));
-    int32_t block = options->cell_px > 0 ? options->cell_px : fw_film_choose_cell(shape);
-    FW_TRY(fw_film_grid_build(shape, block, &out->grid, fault));
+    FW_TRY(cut_grid(shape, options, out, fault));
     FW_TRY(fw_allocate((void **)&out->levels, 1, sizeof *out->levels, holder, fault));
     FW_TRY(fw_film_levels_build(&out->grid, out->levels, fault));
     FW_TRY(allocate_fields(out, fault));
@@ -149,6 +177,7 @@ void fw_film_system_free(fw_film_system *system)
 static fw_status fill_cells(const fw_film_system *system, fw_film_solution *out, fw_fault *fault)
 {
     const fw_film_grid *grid = &system->grid;
+    const fw_film_level *node = &system->levels->level[0];
     double unit = system->px_mm * system->px_mm;
     FW_TRY(fw_allocate((void **)&out->cell, grid->cells, sizeof *out->cell, holder, fault));
     FW_TRY(fw_allocate((void **)&out->cavity_u_mm2, grid->cavities, sizeof(double), holder, fault));
@@ -157,26 +186,25 @@ static fw_status fill_cells(const fw_film_system *system, fw_film_solution *out,
     out->cell_count = grid->cells;
     out->cavity_count = grid->cavities;
     for (uint32_t i = 0; i < grid->cells; i++)
-        out->cell[i] = (fw_film_cell){(float)grid->x[i], (float)(grid->y[i] / grid->ratio),
-                                      (float)(grid->area[i] * unit), (float)(system->u[i] * unit)};
+        out->cell[i] = (fw_film_cell){(float)node->x[i], (float)(node->y[i] / grid->ratio),
+                                      (float)(node->area[i] * unit), (float)(system->u[i] * unit)};
     for (uint32_t k = 0; k < grid->cavities; k++) {
         out->cavity_u_mm2[k] = system->u[grid->cells + k] * unit;
-        out->cavity_area_mm2[k] = grid->area[grid->cells + k] * unit;
+        out->cavity_area_mm2[k] = node->area[grid->cells + k] * unit;
     }
     return FW_OK;
 }
 
 static void fill_sums(const fw_film_system *system, double top, fw_film_solution *out)
 {
-    const fw_film_grid *grid = &system->grid;
+    const fw_film_level *node = &system->levels->level[0];
     double area = 0, integral = 0, moment_x = 0, moment_y = 0, peak = 0;
-    uint32_t nodes = grid->cells + grid->cavities;
-    for (uint32_t i = 0; i < nodes; i++) {
-        double part = grid->area[i] * system->u[i];
-        area += grid->area[i];
+    for (uint32_t i = 0; i < node->nodes; i++) {
+        double part = node->area[i] * system->u[i];
+        area += node->area[i];
         integral += part;
-        moment_x += part * grid->x[i];
-        moment_y += part * grid->y[i];
+        moment_x += part * node->x[i];
+        moment_y += part * node->y[i];
         peak = system->u[i] > peak ? system->u[i] : peak;
     }
     double px = system->px_mm, px2 = px * px, px4 = px2 * px2;
@@ -185,9 +213,10 @@ static void fill_sums(const fw_film_system *system, double top, fw_film_solution
     out->moment_x_mm5 = moment_x * px4 * px;
     out->moment_y_mm5 = moment_y * px4 * px;
     out->peak_u_mm2 = peak * px2;
-    out->capped = nodes > 0 && peak >= top;
-    out->cell_px = grid->block;
-    out->unknowns = nodes;
+    out->capped = node->nodes > 0 && peak >= top;
+    out->cell_px = system->grid.block;
+    out->coarse = system->coarse;
+    out->unknowns = node->nodes;
 }
 
 /* dF/dq at fixed cap: the held nodes stay where they are, the others answer to the source alone,
@@ -227,8 +256,11 @@ static fw_status solve(fw_film_system *system, double obstacle_mm2, fw_film_solu
 {
     double top = obstacle_mm2 / (system->px_mm * system->px_mm);
     system->iterations = 0;
-    bool done = isinf(top) ? fw_film_solve_free(system)
-                           : solve_below(system, top) || fw_film_solve_capped(system, top);
+    bool done = isinf(top) ? fw_film_solve_free(system) : solve_below(system, top);
+    if (!done && !isinf(top)) {
+        FW_TRY(make_room(system, fault));
+        done = fw_film_solve_capped(system, top);
+    }
     out->residual = fw_film_residual(system, top);
     if (!done)
         return fw_fault_set(fault, FW_MACHINE,

@@ -7,10 +7,12 @@
 typedef struct fw_film_system {
     double px_mm;
     double tolerance; /* relative, of the force */
+    bool coarse;      /* see fw_film_solution */
     fw_film_grid grid;
     fw_film_levels *levels;
-    double *u, *rest, *step, *direction, *product, *trial, *correction; /* [nodes] */
-    bool *held, *was_held; /* [nodes] at the obstacle */
+    double *u, *rest, *step, *direction, *product; /* [nodes] */
+    double *trial, *correction;                    /* [nodes] once the obstacle was met */
+    bool *held, *was_held;                         /* [nodes] at the obstacle; likewise */
     uint32_t iterations;
 } fw_film_system;
 

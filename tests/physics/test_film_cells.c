@@ -201,11 +201,39 @@ static void curve_follows_direct_solves(void **state)
     shape_free(&shape);
 }
 
+/* Struts of 10 px every 20 px: over a million cells at 1 px, so the cells double, the solution says
+ * so, and the load is off by no more than film.h says. One strip less, and it stays fine. */
+static void too_many_cells_are_joined(void **state)
+{
+    (void)state;
+    for (int width = 1500; width >= 1300; width -= 200) {
+        drawing d = draw_new(width, 1000);
+        for (int y = 0; y < 1000; y++)
+            for (int x = 0; x < width; x++)
+                *draw_at(&d, x, y) = x % 20 < 10 || y % 20 < 10 ? FILM : OPEN;
+        fw_film_shape shape = draw_shape(&d, 0.05, 0.05);
+        fw_film_solution kept = solve(&shape, 0, (double)INFINITY, 0);
+        fw_film_solution fine = solve(&shape, 1, (double)INFINITY, 0);
+        assert_int_equal(fine.unknowns, fw_runs_pixels(&shape.film));
+        assert_false(fine.coarse);
+        assert_int_equal(kept.coarse, fine.unknowns > FW_FILM_MOST_CELLS);
+        assert_int_equal(kept.cell_px, kept.coarse ? 2 : 1);
+        assert_true(kept.unknowns <= FW_FILM_MOST_CELLS);
+        assert_true(kept.integral_mm4 >= 0.999 * fine.integral_mm4);
+        assert_true(kept.integral_mm4 <= 1.06 * fine.integral_mm4);
+        fw_film_solution_free(&kept);
+        fw_film_solution_free(&fine);
+        shape_free(&shape);
+        free(d.pixel);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(random_masks_equal_elimination),
                                        cmocka_unit_test(cut_cells_by_class),
                                        cmocka_unit_test(thin_gaps_do_not_leak),
+                                       cmocka_unit_test(too_many_cells_are_joined),
                                        cmocka_unit_test(solves_obey_the_bound),
                                        cmocka_unit_test(memo_tells_vented_from_sealed),
                                        cmocka_unit_test(curve_follows_direct_solves)};
