@@ -2,7 +2,7 @@
 
 #include "fault/quota.h"
 
-#include <omp.h>
+#include <pthread.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -17,9 +17,12 @@ typedef struct key_head {
     uint32_t film, sealed, cavities, spare;
 } key_head;
 
+typedef enum entry_state { BEING_SOLVED, SOLVED, FAILED } entry_state;
+
 typedef struct entry {
     struct entry *next; /* in its bucket, or in the list of those kept aside */
-    size_t bytes;       /* charged */
+    entry_state state;
+    size_t bytes; /* charged */
     size_t key_bytes;
     uint64_t hash;
     bool asked; /* since the last trim */
@@ -31,22 +34,36 @@ typedef struct entry {
 struct fw_film_memo {
     fw_budget *budget;
     fw_quota *at_once;
-    omp_lock_t lock; /* held for look-ups and inserts only, never while solving */
+    pthread_mutex_t lock;  /* held for look-ups and inserts only, never while solving */
+    pthread_cond_t solved; /* some entry left BEING_SOLVED */
     entry *bucket[BUCKETS];
-    entry *aside;
+    entry *aside; /* not to be found: did not fit, or failed */
 };
+
+static fw_status open_lock(fw_film_memo *memo, fw_fault *fault)
+{
+    if (pthread_mutex_init(&memo->lock, NULL) != 0)
+        return fw_fault_memory(fault, holder);
+    if (pthread_cond_init(&memo->solved, NULL) != 0) {
+        (void)pthread_mutex_destroy(&memo->lock);
+        return fw_fault_memory(fault, holder);
+    }
+    return FW_OK;
+}
 
 fw_status fw_film_memo_create(fw_budget *budget, fw_film_memo **out, fw_fault *fault)
 {
     fw_film_memo *memo = NULL;
     FW_TRY(fw_allocate((void **)&memo, 1, sizeof *memo, holder, fault));
-    const fw_status status = fw_quota_create(AT_ONCE, &memo->at_once, fault);
+    memo->budget = budget;
+    fw_status status = fw_quota_create(AT_ONCE, &memo->at_once, fault);
+    if (status == FW_OK)
+        status = open_lock(memo, fault);
     if (status != FW_OK) {
+        fw_quota_free(memo->at_once);
         free(memo);
         return status;
     }
-    memo->budget = budget;
-    omp_init_lock(&memo->lock);
     *out = memo;
     return FW_OK;
 }
@@ -74,7 +91,8 @@ void fw_film_memo_free(fw_film_memo *memo)
     for (int b = 0; b < BUCKETS; b++)
         free_list(memo, &memo->bucket[b]);
     free_list(memo, &memo->aside);
-    omp_destroy_lock(&memo->lock);
+    (void)pthread_cond_destroy(&memo->solved);
+    (void)pthread_mutex_destroy(&memo->lock);
     fw_quota_free(memo->at_once);
     free(memo);
 }
@@ -173,35 +191,55 @@ static entry *find(const fw_film_memo *memo, const entry *like)
     return old;
 }
 
-static entry *look_up(fw_film_memo *memo, const entry *like)
+/* Waits for an entry that another thread is solving; true when it came to something. */
+static bool wait_for(fw_film_memo *memo, entry *old)
 {
-    omp_set_lock(&memo->lock);
-    entry *old = find(memo, like);
-    if (old != NULL)
-        old->asked = true;
-    omp_unset_lock(&memo->lock);
-    return old;
+    old->asked = true;
+    while (old->state == BEING_SOLVED)
+        (void)pthread_cond_wait(&memo->solved, &memo->lock);
+    return old->state == SOLVED;
 }
 
-/* Keeps the new entry, or drops it where another thread was first: both hold the same bytes. */
-static entry *keep(fw_film_memo *memo, entry *new)
+/* The entry with the key of `new` once it is solved, or `new` itself, entered and to be solved by
+ * the caller. What failed is gone from its bucket, so whoever waited for it tries for itself. */
+static entry *claim(fw_film_memo *memo, entry *new)
 {
-    omp_set_lock(&memo->lock);
-    entry *old = find(memo, new);
-    if (old == NULL) {
-        entry **list = fw_budget_fits(memo->budget, new->bytes) ? &memo->bucket[new->hash % BUCKETS]
-                                                                : &memo->aside;
+    (void)pthread_mutex_lock(&memo->lock);
+    entry *found = find(memo, new);
+    while (found != NULL && !wait_for(memo, found))
+        found = find(memo, new);
+    if (found == NULL) {
+        entry **bucket = &memo->bucket[new->hash % BUCKETS];
+        new->state = BEING_SOLVED;
         new->asked = true;
-        new->next = *list;
-        *list = new;
-        fw_budget_charge(memo->budget, new->bytes);
+        new->next = *bucket;
+        *bucket = new;
     }
-    omp_unset_lock(&memo->lock);
-    if (old == NULL)
-        return new;
-    fw_film_solution_free(&new->solution);
-    free(new);
-    return old;
+    (void)pthread_mutex_unlock(&memo->lock);
+    return found != NULL ? found : new;
+}
+
+static void put_aside(fw_film_memo *memo, entry *new)
+{
+    entry **link = &memo->bucket[new->hash % BUCKETS];
+    while (*link != new)
+        link = &(*link)->next;
+    *link = new->next;
+    new->next = memo->aside;
+    memo->aside = new;
+}
+
+/* The caller has solved its entry, or could not. */
+static void settle(fw_film_memo *memo, entry *new, entry_state state)
+{
+    new->bytes = sizeof *new + new->key_bytes + fw_film_solution_bytes(&new->solution);
+    (void)pthread_mutex_lock(&memo->lock);
+    if (state == FAILED || !fw_budget_fits(memo->budget, new->bytes))
+        put_aside(memo, new);
+    fw_budget_charge(memo->budget, new->bytes);
+    new->state = state;
+    (void)pthread_cond_broadcast(&memo->solved);
+    (void)pthread_mutex_unlock(&memo->lock);
 }
 
 static fw_status compute(fw_film_memo *memo, const fw_film_shape *shape,
@@ -226,19 +264,14 @@ static fw_status ask(fw_film_memo *memo, const fw_film_shape *shape, const fw_fi
     new->key_bytes = bytes;
     write_key(shape, options, limit, curve, new->key);
     new->hash = hash_of(new->key, bytes);
-    *out = look_up(memo, new);
-    if (*out != NULL) {
+    *out = claim(memo, new);
+    if (*out != new) {
         free(new);
         return FW_OK;
     }
-    fw_status status = compute(memo, shape, options, limit, curve, new, fault);
-    if (status != FW_OK) {
-        free(new);
-        return status;
-    }
-    new->bytes = sizeof *new + bytes + fw_film_solution_bytes(&new->solution);
-    *out = keep(memo, new);
-    return FW_OK;
+    const fw_status status = compute(memo, shape, options, limit, curve, new, fault);
+    settle(memo, new, status == FW_OK ? SOLVED : FAILED);
+    return status;
 }
 
 fw_status fw_film_memo_solve(fw_film_memo *memo, const fw_film_shape *shape,

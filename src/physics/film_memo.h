@@ -5,6 +5,8 @@
  * compared in full on a hit. A result is a pure function of its key, so a memo that is on, off,
  * full or shared by any number of threads never changes a byte of what it hands out.
  *
+ * What one thread is solving, others that ask for it wait for.
+ *
  * Films that are solved at the same time take 320 MiB at most, or one of them alone: others wait.
  *
  * Ownership: the memo owns all that it hands out. A pointer stays valid until the next

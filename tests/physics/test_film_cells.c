@@ -228,6 +228,38 @@ static void too_many_cells_are_joined(void **state)
     }
 }
 
+/* Threads that ask for one shape at the same time get one solution; a shape that cannot be solved
+ * fails for each of them. */
+static void threads_share_a_solve(void **state)
+{
+    (void)state;
+    drawing d = draw_new(120, 120);
+    draw_disc(&d, 60, 60, 50, FILM);
+    fw_film_shape shape = draw_shape(&d, 0.05, 0.05);
+    draw_box(&d, 0, 0, 120, 120, CAVITY); /* sealed up to the edge of its box */
+    fw_film_shape wrong = draw_shape(&d, 0.05, 0.05);
+    fw_budget budget = {.holder = "memo", .limit = 1 << 20};
+    fw_film_memo *memo = NULL;
+    assert_int_equal(fw_film_memo_create(&budget, &memo, NULL), FW_OK);
+    const fw_film_options options = {.obstacle_mm2 = (double)INFINITY};
+    const fw_film_solution *got[32] = {0};
+    int failed = 0;
+#pragma omp parallel for num_threads(4) schedule(static, 1) reduction(+ : failed)
+    for (int i = 0; i < 32; i++) {
+        const fw_film_solution *none = NULL;
+        (void)fw_film_memo_solve(memo, &shape, &options, &got[i], NULL);
+        failed += fw_film_memo_solve(memo, &wrong, &options, &none, NULL) == FW_INPUT;
+    }
+    for (int i = 0; i < 32; i++)
+        assert_ptr_equal(got[i], got[0]);
+    assert_non_null(got[0]);
+    assert_int_equal(failed, 32);
+    fw_film_memo_free(memo);
+    shape_free(&shape);
+    shape_free(&wrong);
+    free(d.pixel);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {cmocka_unit_test(random_masks_equal_elimination),
@@ -236,6 +268,7 @@ int main(void)
                                        cmocka_unit_test(too_many_cells_are_joined),
                                        cmocka_unit_test(solves_obey_the_bound),
                                        cmocka_unit_test(memo_tells_vented_from_sealed),
+                                       cmocka_unit_test(threads_share_a_solve),
                                        cmocka_unit_test(curve_follows_direct_solves)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
