@@ -23,9 +23,17 @@
 
 #include "mask/runs.h"
 
-/* One cluster: the regions that share sealed cavities, in coordinates of its own box. */
+/* at + x * per_x_px + y * per_y_px, px from the corner of the box: zero where nothing changes. */
+typedef struct fw_film_plane {
+    double at, per_x_px, per_y_px;
+} fw_film_plane;
+
+/* One cluster: the regions that share sealed cavities, in coordinates of its own box. A plate that
+ * tilts parts with speed v (1 + faster) from a gap h (1 + wider): then -div((1 + wider)^3 grad u) =
+ * 1 + faster, and u may be below zero where the plate approaches. */
 typedef struct fw_film_shape {
-    double px_mm, py_mm;   /* pixel size, > 0 */
+    double px_mm, py_mm; /* pixel size, > 0 */
+    fw_film_plane faster, wider;
     fw_runs film;          /* solid pixels; width and height are the box */
     fw_runs sealed;        /* pixels of sealed cavities, same box, disjoint from film; any other
                               pixel, and all outside the box, is open to the vat (u = 0) */
@@ -92,7 +100,8 @@ int32_t fw_film_choose_cell(const fw_film_shape *shape);
 /* Upper bound of G in mm4 from runs alone, for every cell size: leaving out the flow across the
  * rows can only raise the maximum of 2 int u - int |grad u|^2, and a row of length l alone gives
  * l^3 / 12 (l^3 / 12 + l / 6 in pixels on the grid); columns likewise, the lesser of the two.
- * Sealed cavities count as film. */
+ * Sealed cavities count as film. Of a straight pull (faster, wider: zero); a plate that tilts over
+ * an even gap pulls no more than that times the largest 1 + faster (maximum principle). */
 double fw_film_bound(const fw_film_shape *shape);
 
 #endif

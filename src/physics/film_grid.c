@@ -18,6 +18,11 @@ typedef struct cutter {
     fw_fault *fault;
 } cutter;
 
+double fw_film_grid_factor(fw_film_plane plane, double x, double y)
+{
+    return 1 + plane.at + plane.per_x_px * x + plane.per_y_px * y;
+}
+
 void fw_film_grid_free(fw_film_grid *grid)
 {
     free(grid->area);
@@ -343,7 +348,12 @@ static fw_status cut_all(cutter *cut, uint32_t most, bool *fits)
 fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, uint32_t most,
                              fw_film_grid *out, bool *fits, fw_fault *fault)
 {
-    *out = (fw_film_grid){.block = block, .ratio = shape->py_mm / shape->px_mm};
+    *out = (fw_film_grid){.block = block,
+                          .ratio = shape->py_mm / shape->px_mm,
+                          .faster = shape->faster,
+                          .wider = shape->wider};
+    out->faster.per_y_px /= out->ratio;
+    out->wider.per_y_px /= out->ratio;
     cutter cut = {.shape = shape, .grid = out, .fault = fault};
     *fits = false;
     fw_status status = cut_all(&cut, most, fits);

@@ -38,8 +38,9 @@ typedef struct fw_film_grid {
     uint32_t cells, cavities;
     int32_t block; /* Q */
     double ratio;
-    double *area, *x, *y;       /* [cells + cavities] area and centroid */
-    int32_t *block_x, *block_y; /* [cells + cavities] the block (a cavity: of its centroid) */
+    fw_film_plane faster, wider; /* per column both ways */
+    double *area, *x, *y;        /* [cells + cavities] area and centroid */
+    int32_t *block_x, *block_y;  /* [cells + cavities] the block (a cavity: of its centroid) */
     fw_film_face *face;
     fw_film_link *link; /* grouped by cell */
     size_t face_count, link_count;
@@ -52,6 +53,8 @@ fw_status fw_film_grid_build(const fw_film_shape *shape, int32_t block, uint32_t
                              fw_film_grid *out, bool *fits, fw_fault *fault);
 void fw_film_grid_drop_faces(fw_film_grid *grid);
 void fw_film_grid_drop_links(fw_film_grid *grid);
+/* 1 + plane at (x, y), in columns. */
+double fw_film_grid_factor(fw_film_plane plane, double x, double y);
 void fw_film_grid_free(fw_film_grid *grid);
 
 #endif

@@ -85,6 +85,18 @@ void fw_film_levels_free(fw_film_levels *levels)
 
 /* ---- the finest level ---- */
 
+static double speed_at(const fw_film_grid *grid, const fw_film_level *level, uint32_t i)
+{
+    return fw_film_grid_factor(grid->faster, level->x[i], level->y[i]);
+}
+
+/* What the gap at (x, y) does to a flux: its third power. */
+static double mobility_at(const fw_film_grid *grid, double x, double y)
+{
+    const double gap = fw_film_grid_factor(grid->wider, x, y);
+    return gap * gap * gap;
+}
+
 static void take_nodes(fw_film_grid *grid, fw_film_level *level)
 {
     level->area = grid->area;
@@ -95,7 +107,7 @@ static void take_nodes(fw_film_grid *grid, fw_film_level *level)
     grid->area = grid->x = grid->y = NULL;
     grid->block_x = grid->block_y = NULL;
     for (uint32_t i = 0; i < level->nodes; i++) {
-        level->source[i] = level->area[i];
+        level->source[i] = level->area[i] * speed_at(grid, level, i);
         level->cavity[i] = i >= grid->cells;
     }
 }
@@ -110,6 +122,7 @@ static void shift_source(const fw_film_grid *grid, fw_film_level *level)
         for (end = i; end < grid->link_count && grid->link[end].cell == cell; end++)
             sum += grid->link[end].length * grid->link[end].distance;
         double scale = sum > level->area[cell] ? share * level->area[cell] / sum : share;
+        scale *= speed_at(grid, level, cell);
         level->source[cell] -= scale * sum;
         for (size_t k = i; k < end; k++) {
             if (grid->link[k].target != FW_FILM_VAT)
@@ -176,8 +189,10 @@ static void fill_entries(const fw_film_grid *grid, fw_film_level *level, uint32_
     memcpy(cursor, level->row, level->nodes * sizeof *cursor);
     for (size_t i = 0; i < grid->face_count; i++) {
         fw_film_face face = grid->face[i];
+        const double mobility = mobility_at(grid, 0.5 * (level->x[face.a] + level->x[face.b]),
+                                            0.5 * (level->y[face.a] + level->y[face.b]));
         put(level, cursor, face.a, face.b,
-            face.length / between(level->x, level->y, face.a, face.b));
+            mobility * face.length / between(level->x, level->y, face.a, face.b));
     }
     for (size_t i = 0; i < grid->link_count; i++) {
         fw_film_link side = grid->link[i];
@@ -188,12 +203,23 @@ static void fill_entries(const fw_film_grid *grid, fw_film_level *level, uint32_
     }
 }
 
+/* From here on a side is as long as a wider gap makes it. */
+static void widen_sides(fw_film_grid *grid, const fw_film_level *level)
+{
+    for (size_t i = 0; i < grid->link_count; i++) {
+        fw_film_link *side = &grid->link[i];
+        side->length *= mobility_at(grid, level->x[side->cell] + 0.5 * side->nx * side->distance,
+                                    level->y[side->cell] + 0.5 * side->ny * side->distance);
+    }
+}
+
 static fw_status build_finest(fw_film_grid *grid, fw_film_level *level, fw_fault *fault)
 {
     level->nodes = grid->cells + grid->cavities;
     FW_TRY(allocate_nodes(level, fault));
     take_nodes(grid, level);
     shift_source(grid, level);
+    widen_sides(grid, level);
     count_entries(grid, level);
     FW_TRY(allocate_entries(level, level->row[level->nodes], fault));
     fill_entries(grid, level, level->coarse_node); /* free until the next level is made */

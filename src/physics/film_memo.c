@@ -13,6 +13,7 @@ static const char holder[] = "memo of peel films";
 /* All that a result depends on, as bytes: a head, then the arrays in turn. */
 typedef struct key_head {
     double px_mm, py_mm, limit, tolerance; /* limit: obstacle, or the cap of a curve */
+    fw_film_plane faster, wider;
     int32_t width, height, cell_px, curve;
     uint32_t film, sealed, cavities, spare;
 } key_head;
@@ -153,6 +154,8 @@ static void write_key(const fw_film_shape *shape, const fw_film_options *options
     key_head head = {.px_mm = shape->px_mm,
                      .py_mm = shape->py_mm,
                      .limit = limit,
+                     .faster = shape->faster,
+                     .wider = shape->wider,
                      .tolerance = options->work_tolerance,
                      .width = film->width,
                      .height = film->height,

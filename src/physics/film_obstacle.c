@@ -120,7 +120,7 @@ double fw_film_residual(fw_film_system *system, double top)
         double room = full_diagonal(level, i) * (top - system->u[i]);
         double value = fabs(room < system->rest[i] ? room : system->rest[i]);
         worst = value > worst ? value : worst;
-        largest = level->source[i] > largest ? level->source[i] : largest;
+        largest = fabs(level->source[i]) > largest ? fabs(level->source[i]) : largest;
     }
     return largest > 0 ? worst / largest : 0;
 }

@@ -28,6 +28,19 @@ static fw_status check_sizes(const fw_film_shape *shape, fw_fault *fault)
     return FW_OK;
 }
 
+/* A plane is least and most at corners of the box. */
+static fw_status check_gap(const fw_film_shape *shape, fw_fault *fault)
+{
+    const fw_film_plane gap = shape->wider;
+    const double across = gap.per_x_px * shape->film.width,
+                 down = gap.per_y_px * shape->film.height;
+    const double least = 1 + gap.at + fmin(across, 0) + fmin(down, 0);
+    if (least > 0)
+        return FW_OK;
+    return fw_fault_set(fault, FW_INPUT,
+                        "gap closed to %g of its size, peel film, tilt the plate less", least);
+}
+
 static fw_status check_cavities(const fw_film_shape *shape, fw_fault *fault)
 {
     for (uint32_t i = 0; i < shape->sealed.count; i++) {
@@ -136,6 +149,7 @@ static fw_status build(const fw_film_shape *shape, const fw_film_options *option
                        fw_film_system *out, fw_fault *fault)
 {
     FW_TRY(check_sizes(shape, fault));
+    FW_TRY(check_gap(shape, fault));
     FW_TRY(check_cavities(shape, fault));
     FW_TRY(check_options(options, fault));
     FW_TRY(cut_grid(shape, options, out, fault));
