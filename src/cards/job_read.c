@@ -3,6 +3,7 @@
 
 #include "cards/yaml_read.h"
 #include "fault/memory.h"
+#include "physics/separation.h"
 
 #include <errno.h>
 #include <math.h>
@@ -112,6 +113,27 @@ static fw_status check_gap(const fw_yaml_marks *marks, fw_machine *machine, fw_f
     return FW_OK;
 }
 
+/* A line needs two points, and only a plate that tilts has a hinge. */
+static fw_status check_hinge(const fw_yaml_marks *marks, const fw_machine *machine, fw_fault *fault)
+{
+    const char *key = "separation.hinge_mm";
+    const double(*at)[2] = machine->hinge_mm.at;
+    const bool given = fw_yaml_given(marks, key);
+    if (machine->mode != FW_MODE_TILT)
+        return given ? fw_yaml_refuse(marks, key, fault,
+                                      "is for mode: tilt; change the mode or leave it out")
+                     : FW_OK;
+    if (!given)
+        return fw_yaml_refuse(marks, "separation.mode", fault,
+                              "tilt needs a hinge line; add hinge_mm: [[x, y], [x, y]]");
+    if (machine->hinge_mm.count != 2 || (at[0][0] == at[1][0] && at[0][1] == at[1][1]))
+        return fw_yaml_refuse(marks, key, fault, "is no line; give two points apart");
+    if (fw_separation_lever(machine, machine->plate_mm[0] / 2, machine->plate_mm[1] / 2) == 0)
+        return fw_yaml_refuse(marks, key, fault,
+                              "runs through the plate's centre, where speed_mm_s is; move it");
+    return FW_OK;
+}
+
 static fw_status curable(const fw_job *job, const char *where, fw_fault *fault)
 {
     const fw_resin *resin = &job->resin;
@@ -155,6 +177,8 @@ fw_status fw_machine_read(const char *path, fw_machine *out, fw_fault *fault)
     fw_status status = fw_yaml_read(path, &fw_machine_table, out, &marks, fault);
     if (status == FW_OK)
         status = check_gap(&marks, out, fault);
+    if (status == FW_OK)
+        status = check_hinge(&marks, out, fault);
     if (status != FW_OK)
         *out = (fw_machine){0};
     return status;

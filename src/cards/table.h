@@ -14,6 +14,7 @@ typedef enum fw_row_type {
     FW_ROW_SECTION, /* a mapping of further keys; fills a bool: the section was given */
     FW_ROW_NUMBER,  /* double */
     FW_ROW_PAIR,    /* double[2], written [a, b] */
+    FW_ROW_POINTS,  /* fw_points, written [[a, b], [c, d]] */
     FW_ROW_WHOLE,   /* int32_t */
     FW_ROW_WHOLES,  /* int[2], written [a, b] */
     FW_ROW_TEXT,    /* char[size], not empty */

@@ -152,6 +152,27 @@ static fw_status read_pair(reader *r, const fw_row *row, const yaml_node_t *node
     return read_decimal(r, row, pair[1], &out[1]);
 }
 
+static fw_status read_points(reader *r, const fw_row *row, const yaml_node_t *node)
+{
+    fw_points *out = field(r, row);
+    if (node->type != YAML_SEQUENCE_NODE)
+        return fw_yaml_refuse(r->marks, row->path, r->fault,
+                              "expects pairs in brackets, such as [[0, 0], [1, 1]]");
+    const yaml_node_item_t *item = node->data.sequence.items.start;
+    const ptrdiff_t count = node->data.sequence.items.top - item;
+    if (count > FW_CARD_POINTS)
+        return fw_yaml_refuse(r->marks, row->path, r->fault, "has %td pairs; give %d at most",
+                              count, (int)FW_CARD_POINTS);
+    for (out->count = 0; out->count < count; out->count++) {
+        yaml_node_t *pair[2] = {NULL, NULL};
+        const yaml_node_t *each = yaml_document_get_node(&r->document, item[out->count]);
+        FW_TRY(read_two(r, row, each, pair));
+        for (int i = 0; i < 2; i++)
+            FW_TRY(read_decimal(r, row, pair[i], &out->at[out->count][i]));
+    }
+    return FW_OK;
+}
+
 static fw_status read_wholes(reader *r, const fw_row *row, const yaml_node_t *node)
 {
     yaml_node_t *pair[2] = {NULL, NULL};
@@ -263,6 +284,8 @@ static fw_status read_value(reader *r, const fw_row *row, const yaml_node_t *nod
         return read_decimal(r, row, node, field(r, row));
     case FW_ROW_PAIR:
         return read_pair(r, row, node);
+    case FW_ROW_POINTS:
+        return read_points(r, row, node);
     case FW_ROW_WHOLE:
         return read_whole(r, row, node, field(r, row));
     case FW_ROW_WHOLES:

@@ -1,6 +1,7 @@
 #include "check/clusters.h"
 
 #include "fault/memory.h"
+#include "physics/separation.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -178,6 +179,21 @@ static void add_row_bounds(const fw_setup *setup, const fw_slice *slice, fw_peel
     }
 }
 
+/* A film that parts no faster than w times the card's speed carries no more than w times as much.
+ */
+static void add_speeds(const fw_setup *setup, fw_peel *out)
+{
+    for (uint32_t c = 0; c < out->count; c++) {
+        fw_cluster *cluster = &out->cluster[c];
+        fw_film_plane faster = setup->faster;
+        faster.at += faster.per_x_px * cluster->x0 + faster.per_y_px * cluster->y0;
+        double least, most;
+        fw_separation_speeds(faster, cluster->x1 - cluster->x0, cluster->y1 - cluster->y0, &least,
+                             &most);
+        cluster->bound_mm4 *= most;
+    }
+}
+
 fw_status fw_clusters_find(const fw_setup *setup, const fw_slice *slice, const uint8_t *posts_only,
                            const uint32_t *sealed, fw_peel *out, fw_fault *fault)
 {
@@ -196,6 +212,7 @@ fw_status fw_clusters_find(const fw_setup *setup, const fw_slice *slice, const u
     FW_TRY(number_clusters(regions, posts_only, out, fault));
     FW_TRY(number_cavities(setup, slice, sealed, out, fault));
     add_row_bounds(setup, slice, out);
+    add_speeds(setup, out);
     return FW_OK;
 }
 
@@ -205,6 +222,9 @@ static fw_status begin_shape(const fw_setup *setup, fw_cluster *cluster, fw_faul
     cluster->shape.px_mm = setup->px_mm;
     cluster->shape.py_mm = setup->py_mm;
     cluster->shape.cavity_count = cluster->cavity_count;
+    cluster->shape.faster = setup->faster;
+    cluster->shape.faster.at +=
+        setup->faster.per_x_px * cluster->x0 + setup->faster.per_y_px * cluster->y0;
     FW_TRY(fw_runs_begin(&cluster->shape.film, width, height, fault));
     return fw_runs_begin(&cluster->shape.sealed, width, height, fault);
 }

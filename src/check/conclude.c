@@ -54,8 +54,8 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out, "peel load: the job names no machine card");
     if (!conclusion->setup->loads)
         not_checked(out, "margins: they need both cards");
-    not_checked(out, "peel with tilt, slide or a peeling film: the load is a straight pull on a "
-                     "rigid frame");
+    not_checked(out, "frame compliance, and how a film or coating of the window gives: the load is "
+                     "that of a rigid machine");
     not_checked(out,
                 "lever action on the posts: each place loads only the anchor nearest to the plate");
     not_checked(out,

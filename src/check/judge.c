@@ -73,7 +73,9 @@ fw_status fw_judge_new(const fw_judge_input *input, fw_judge **out, fw_fault *fa
     judge->placer = input->placer;
     judge->memo = input->memo;
     judge->times = input->times;
-    const fw_status status = open_rooms(judge, fault);
+    fw_status status = fw_setup_check(&judge->setup, fault);
+    if (status == FW_OK)
+        status = open_rooms(judge, fault);
     for (size_t i = 0; i < judge->sheet_capacity; i++)
         judge->sheet[i] = (fw_sheet){0};
     if (status != FW_OK) {

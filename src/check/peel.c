@@ -112,6 +112,18 @@ void fw_peel_range_bound(const fw_setup *setup, const fw_peel *peel, double most
     }
 }
 
+/* A capped film under a plate that tilts has no load curve: it is solved at the asked q. */
+static fw_status range_by_solve(const fw_setup *setup, fw_film_memo *memo, fw_cluster *cluster,
+                                int end, fw_fault *fault)
+{
+    const double q = setup->q_range[end];
+    const fw_film_options options = {.obstacle_mm2 = setup->cap_MPa / q};
+    const fw_film_solution *solution = NULL;
+    FW_TRY(fw_film_memo_solve(memo, &cluster->shape, &options, &solution, fault));
+    cluster->range_N[end] = q * solution->integral_mm4;
+    return FW_OK;
+}
+
 static fw_status cluster_range(const fw_setup *setup, fw_film_memo *memo, fw_cluster *cluster,
                                fw_fault *fault)
 {
@@ -121,6 +133,10 @@ static fw_status cluster_range(const fw_setup *setup, fw_film_memo *memo, fw_clu
         cluster->range_N[end] = cluster_bound(setup, cluster, q);
         if (cluster->solution == NULL || is_straight(setup, cluster->solution, q))
             continue;
+        if (setup->job->machine.mode == FW_MODE_TILT) {
+            FW_TRY(range_by_solve(setup, memo, cluster, end, fault));
+            continue;
+        }
         const fw_film_options options = {0};
         if (curve == NULL)
             FW_TRY(

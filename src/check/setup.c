@@ -28,6 +28,7 @@ static void set_loads(fw_setup *setup, const fw_job *job)
     for (int end = 0; end < 2; end++)
         setup->q_range[end] = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s,
                                               machine->gap_range_um[end]);
+    setup->faster = fw_separation_faster(machine, setup->px_mm, setup->py_mm);
     setup->cap_MPa = machine->cap_kPa / 1000;
     setup->unsolved_N = unsolved_below(job);
 }
@@ -58,6 +59,19 @@ fw_setup fw_setup_make(const fw_job *job, int32_t width, int32_t height, int32_t
     if (setup.loads)
         set_loads(&setup, job);
     return setup;
+}
+
+fw_status fw_setup_check(const fw_setup *setup, fw_fault *fault)
+{
+    double least, most;
+    fw_separation_speeds(setup->faster, setup->width, setup->height, &least, &most);
+    if (!setup->loads || least > 0)
+        return FW_OK;
+    return fw_fault_set(
+        fault, FW_INPUT,
+        "separation.hinge_mm: the hinge line crosses the image of %g x %g mm, or the "
+        "image lies beyond it; move it beside the image, on the plate's far side",
+        setup->width * setup->px_mm, setup->height * setup->py_mm);
 }
 
 double fw_setup_x(const fw_setup *setup, double x)

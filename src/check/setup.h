@@ -3,6 +3,7 @@
 #define FW_CHECK_SETUP_H
 
 #include "check/job.h"
+#include "physics/film.h"
 
 #include <stdint.h>
 
@@ -23,14 +24,18 @@ typedef struct fw_setup {
     double smallest_tip_mm; /* 0 without post rules */
     bool loads;             /* both cards are there: peel loads and margins can be computed */
     double q;               /* 12 eta v / h^3, MPa/mm2, at the card's gap */
-    double q_range[2];      /* at the narrow and at the wide end of the gap range */
-    double cap_MPa;         /* suction that the liquid holds */
-    double unsolved_N;      /* a cluster whose upper bound is below this is not solved */
+    fw_film_plane faster; /* how the speed differs over the image, from its first pixel's corner */
+    double q_range[2];    /* at the narrow and at the wide end of the gap range */
+    double cap_MPa;       /* suction that the liquid holds */
+    double unsolved_N;    /* a cluster whose upper bound is below this is not solved */
 } fw_setup;
 
 /* full: 2^depth - 1 of the stack's files. */
 fw_setup fw_setup_make(const fw_job *job, int32_t width, int32_t height, int32_t layers,
                        int32_t lift, int32_t full);
+
+/* What the job and the stack's size cannot be together: FW_INPUT. */
+fw_status fw_setup_check(const fw_setup *setup, fw_fault *fault);
 
 /* Centre of pixel (x, y) in mm. */
 double fw_setup_x(const fw_setup *setup, double x);

@@ -9,6 +9,13 @@ enum { FW_CARD_TEXT = 128 };
 /* Where a group of card values comes from. */
 typedef enum fw_basis { FW_ASSUMED, FW_SUPPLIER, FW_MEASURED } fw_basis;
 
+/* A list of pairs in a card. */
+enum { FW_CARD_POINTS = 32 };
+typedef struct fw_points {
+    int count;
+    double at[FW_CARD_POINTS][2];
+} fw_points;
+
 typedef struct fw_resin {
     char name[FW_CARD_TEXT];
     char lot[FW_CARD_TEXT]; /* empty when not given */
@@ -25,10 +32,18 @@ typedef struct fw_resin {
     double angle_deg; /* self-supporting angle from the plate */
 } fw_resin;
 
+/* How a layer is parted from the window. */
+typedef enum fw_mode {
+    FW_MODE_PULL, /* the plate draws straight away */
+    FW_MODE_TILT, /* it turns about a hinge line */
+} fw_mode;
+
 typedef struct fw_machine {
     char name[FW_CARD_TEXT];
     fw_basis basis_separation, basis_frame;
-    double speed_mm_s;      /* separation speed at the plate */
+    fw_mode mode;
+    double speed_mm_s;      /* separation speed, at the plate's centre */
+    fw_points hinge_mm;     /* tilt: two points of the hinge line, in the stack's x, y */
     double gap_um;          /* liquid film between layer and window */
     double gap_range_um[2]; /* both gap_um when not given */
     double cap_kPa;         /* suction that the liquid can hold, gauge */

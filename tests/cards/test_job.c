@@ -323,8 +323,17 @@ static void refuses_bad_machines(void **state)
 {
     (void)state;
     static const bad_case bad[] = {
-        {"mode: pull", "mode: tilt",
-         ":2: separation.mode: 'tilt': this version computes mode: pull only"},
+        {"mode: pull", "mode: slide",
+         ":2: separation.mode: 'slide': this version computes pull and tilt"},
+        {"mode: pull", "mode: tilt", ":2: separation.mode: tilt needs a hinge line"},
+        {"mode: pull", "mode: pull, hinge_mm: [[0, 0], [0, 1]]", ":2: separation.hinge_mm: is for"},
+        {"mode: pull", "mode: tilt, hinge_mm: [[0, 0]]", ":2: separation.hinge_mm: is no line"},
+        {"mode: pull", "mode: tilt, hinge_mm: [[1, 2], [1, 2]]",
+         ":2: separation.hinge_mm: is no line"},
+        {"mode: pull", "mode: tilt, hinge_mm: [0, 1]", ":2: separation.hinge_mm: expects two"},
+        {"mode: pull", "mode: tilt, hinge_mm: here", ":2: separation.hinge_mm: expects pairs"},
+        {"mode: pull", "mode: tilt, hinge_mm: [[0, 0], [1, x]]",
+         ":2: separation.hinge_mm: 'x' is no"},
         {"mode: pull", "mode: [pull]", ":2: separation.mode: expects a text"},
         {"mode: pull, ", "", ":2: separation.mode: missing"},
         {"[40, 250]", "[120, 250]",

@@ -325,6 +325,55 @@ static void slots_forget(void **state)
     layer_free(&other);
 }
 
+/* Reciprocity: the integral of u_tilt is that of u_pull times 1 + faster, and on a disc that is its
+ * value in the middle. The hinge 5 mm beside the image, the plate's centre 37 mm from it. */
+static void a_plate_that_tilts(void **state)
+{
+    (void)state;
+    for (int turned = 0; turned < 2; turned++) {
+        layer pull = disc(100, 40, 0), tilt = disc(100, 40, 0);
+        solve(&pull, OPEN_HOLES);
+        tilt.stage.job.machine.mode = FW_MODE_TILT;
+        tilt.stage.job.machine.hinge_mm = (fw_points){2, {{-5, 3}, {-5, turned ? 9 : -9}}};
+        solve(&tilt, OPEN_HOLES);
+        const double middle = 0.5 * tilt.stage.width * tilt.setup.px_mm;
+        assert_int_equal(tilt.peel.limited_by, FW_BY_FILM);
+        assert_near(tilt.peel.force_N, pull.peel.force_N * (5 + middle) / 37, 2e-3);
+        for (uint32_t c = 0; c < tilt.peel.count; c++)
+            assert_true(tilt.peel.cluster[c].force_N <=
+                        tilt.setup.q * tilt.peel.cluster[c].bound_mm4);
+        layer_free(&pull);
+        layer_free(&tilt);
+    }
+}
+
+/* At its cap a tilted film has no curve: both ends of the gap range are solved for themselves, and
+ * are what a card with that gap gives. */
+static void tilt_over_the_gap_range(void **state)
+{
+    (void)state;
+    double at[2];
+    for (int end = 0; end < 3; end++) {
+        layer l = disc(120, 50, 0);
+        l.stage.job.machine.mode = FW_MODE_TILT;
+        l.stage.job.machine.hinge_mm = (fw_points){2, {{-5, 0}, {-5, 1}}};
+        l.stage.job.machine.cap_kPa = 101.325;
+        l.stage.job.machine.gap_range_um[0] = 20;
+        l.stage.job.machine.gap_range_um[1] = 60;
+        l.stage.job.machine.gap_um = end == 0 ? 20 : end == 1 ? 60 : 40;
+        solve(&l, OPEN_HOLES);
+        if (end < 2)
+            at[end] = l.peel.force_N;
+        assert_int_equal(fw_peel_range(&l.setup, l.memo, &l.peel, NULL), FW_OK);
+        for (int k = 0; k < 2 && end == 2; k++)
+            assert_near(l.peel.range_N[k], at[k], 2e-3);
+        if (end == 0)
+            assert_int_equal(l.peel.limited_by, FW_BY_CAP);
+        layer_free(&l);
+    }
+    assert_true(at[0] > at[1]);
+}
+
 static void nothing_pulls_nothing(void **state)
 {
     (void)state;
@@ -351,6 +400,8 @@ int main(void)
                                        cmocka_unit_test(range_agrees_with_direct_solves),
                                        cmocka_unit_test(range_stays_under_the_cap),
                                        cmocka_unit_test(slots_forget),
+                                       cmocka_unit_test(a_plate_that_tilts),
+                                       cmocka_unit_test(tilt_over_the_gap_range),
                                        cmocka_unit_test(nothing_pulls_nothing)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
