@@ -113,25 +113,74 @@ static fw_status check_gap(const fw_yaml_marks *marks, fw_machine *machine, fw_f
     return FW_OK;
 }
 
-/* A line needs two points, and only a plate that tilts has a hinge. */
+/* A line needs two points. */
 static fw_status check_hinge(const fw_yaml_marks *marks, const fw_machine *machine, fw_fault *fault)
 {
     const char *key = "separation.hinge_mm";
     const double(*at)[2] = machine->hinge_mm.at;
-    const bool given = fw_yaml_given(marks, key);
-    if (machine->mode != FW_MODE_TILT)
-        return given ? fw_yaml_refuse(marks, key, fault,
-                                      "is for mode: tilt; change the mode or leave it out")
-                     : FW_OK;
-    if (!given)
-        return fw_yaml_refuse(marks, "separation.mode", fault,
-                              "tilt needs a hinge line; add hinge_mm: [[x, y], [x, y]]");
     if (machine->hinge_mm.count != 2 || (at[0][0] == at[1][0] && at[0][1] == at[1][1]))
         return fw_yaml_refuse(marks, key, fault, "is no line; give two points apart");
     if (fw_separation_lever(machine, machine->plate_mm[0] / 2, machine->plate_mm[1] / 2) == 0)
         return fw_yaml_refuse(marks, key, fault,
                               "runs through the plate's centre, where speed_mm_s is; move it");
     return FW_OK;
+}
+
+static fw_status check_force_table(const fw_yaml_marks *marks, const fw_machine *machine,
+                                   fw_fault *fault)
+{
+    const fw_points *table = &machine->table_mm2_N;
+    double before[2] = {0, 0};
+    for (int i = 0; i < table->count; i++) {
+        if (!(table->at[i][0] > before[0]) || table->at[i][1] < before[1])
+            return fw_yaml_refuse(marks, "separation.table_mm2_N", fault,
+                                  "pair %d does not grow on the one before it; sort by area from "
+                                  "above 0, forces never falling",
+                                  i + 1);
+        before[0] = table->at[i][0];
+        before[1] = table->at[i][1];
+    }
+    if (table->count > 0)
+        return FW_OK;
+    return fw_yaml_refuse(marks, "separation.table_mm2_N", fault,
+                          "is empty; give one pair at least");
+}
+
+/* Which keys of separation a mode needs and takes. */
+typedef struct mode_key {
+    const char *key;
+    bool takes[4], needs[4]; /* by fw_mode */
+} mode_key;
+
+static const mode_key mode_keys[] = {
+    {"separation.speed_mm_s", {true, true, false, false}, {true, true, false, false}},
+    {"separation.gap_um", {true, true, false, false}, {true, true, false, false}},
+    {"separation.gap_range_um", {true, true, false, false}, {false, false, false, false}},
+    {"separation.cap_kPa", {true, true, true, false}, {false, false, false, false}},
+    {"separation.hinge_mm", {false, true, false, false}, {false, true, false, false}},
+    {"separation.area_kPa", {false, false, true, false}, {false, false, true, false}},
+    {"separation.rim_N_mm", {false, false, true, false}, {false, false, true, false}},
+    {"separation.front_mm", {false, false, true, false}, {false, false, false, false}},
+    {"separation.table_mm2_N", {false, false, false, true}, {false, false, false, true}},
+};
+
+static fw_status check_mode(const fw_yaml_marks *marks, const fw_machine *machine, fw_fault *fault)
+{
+    static const char *const name[] = {"pull", "tilt", "film", "measured"};
+    for (size_t i = 0; i < sizeof mode_keys / sizeof *mode_keys; i++) {
+        const mode_key *row = &mode_keys[i];
+        const bool given = fw_yaml_given(marks, row->key);
+        if (given && !row->takes[machine->mode])
+            return fw_yaml_refuse(marks, row->key, fault,
+                                  "means nothing in mode: %s; leave it out or change the mode",
+                                  name[machine->mode]);
+        if (!given && row->needs[machine->mode])
+            return fw_yaml_refuse(marks, "separation.mode", fault, "%s needs %s; add it",
+                                  name[machine->mode], strchr(row->key, '.') + 1);
+    }
+    if (machine->mode == FW_MODE_TILT)
+        return check_hinge(marks, machine, fault);
+    return machine->mode == FW_MODE_MEASURED ? check_force_table(marks, machine, fault) : FW_OK;
 }
 
 static fw_status curable(const fw_job *job, const char *where, fw_fault *fault)
@@ -176,9 +225,9 @@ fw_status fw_machine_read(const char *path, fw_machine *out, fw_fault *fault)
     *out = (fw_machine){0};
     fw_status status = fw_yaml_read(path, &fw_machine_table, out, &marks, fault);
     if (status == FW_OK)
-        status = check_gap(&marks, out, fault);
+        status = check_mode(&marks, out, fault);
     if (status == FW_OK)
-        status = check_hinge(&marks, out, fault);
+        status = check_gap(&marks, out, fault);
     if (status != FW_OK)
         *out = (fw_machine){0};
     return status;

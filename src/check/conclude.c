@@ -54,8 +54,14 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out, "peel load: the job names no machine card");
     if (!conclusion->setup->loads)
         not_checked(out, "margins: they need both cards");
-    not_checked(out, "frame compliance, and how a film or coating of the window gives: the load is "
-                     "that of a rigid machine");
+    if (conclusion->setup->traction.law == FW_TRACTION_NONE)
+        not_checked(out,
+                    "frame compliance, and how a film or coating of the window gives: the load "
+                    "is that of a rigid machine");
+    else
+        not_checked(out,
+                    "whether the measured separation law holds here: it knows no gap, viscosity "
+                    "or speed, and nothing beyond the shapes and areas that it was measured on");
     not_checked(out,
                 "lever action on the posts: each place loads only the anchor nearest to the plate");
     not_checked(out,
@@ -78,8 +84,9 @@ static void sum_up(const fw_conclusion *conclusion, fw_report *out)
                           .peak_range_N = {NAN, NAN}};
     if (!setup->loads)
         return;
-    totals->peak_range_N[0] = conclusion->range_N[0];
-    totals->peak_range_N[1] = conclusion->range_N[1];
+    for (int end = 0; end < 2; end++) /* a measured law knows no gap */
+        totals->peak_range_N[end] =
+            setup->traction.law == FW_TRACTION_NONE ? conclusion->range_N[end] : NAN;
     for (int32_t n = 0; n < setup->layers; n++) {
         const fw_layer_row *row = &out->layer[n];
         totals->capped_layers += row->limited_by == FW_BY_CAP;

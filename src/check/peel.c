@@ -34,7 +34,8 @@ void fw_peel_free(fw_peel *peel)
  * voids is always solved, since its holes are not in the bound. */
 static bool is_negligible(const fw_setup *setup, const fw_cluster *cluster)
 {
-    return !cluster->sealed && setup->q * cluster->bound_mm4 < setup->unsolved_N;
+    return setup->traction.law == FW_TRACTION_NONE && !cluster->sealed &&
+           setup->q * cluster->bound_mm4 < setup->unsolved_N;
 }
 
 /* Of a cluster without sealed voids: what its rows carry at most, and no more than the liquid
@@ -51,9 +52,22 @@ static void use_bound(const fw_setup *setup, fw_cluster *cluster)
     cluster->limited_by = FW_BY_BOUND;
 }
 
+static fw_status follow_law(const fw_setup *setup, fw_film_memo *memo, fw_cluster *cluster,
+                            fw_fault *fault)
+{
+    const bool table = setup->traction.law == FW_TRACTION_TABLE;
+    FW_TRY(
+        fw_film_memo_traction(memo, &cluster->shape, &setup->traction, &cluster->solution, fault));
+    cluster->force_N = cluster->solution->integral_mm4;
+    cluster->limited_by = table ? FW_BY_TABLE : FW_BY_FILM;
+    return FW_OK;
+}
+
 static fw_status solve_cluster(const fw_setup *setup, fw_film_memo *memo, fw_cluster *cluster,
                                fw_fault *fault)
 {
+    if (setup->traction.law != FW_TRACTION_NONE)
+        return follow_law(setup, memo, cluster, fault);
     const fw_film_options options = {.obstacle_mm2 = setup->cap_MPa / setup->q};
     FW_TRY(fw_film_memo_solve(memo, &cluster->shape, &options, &cluster->solution, fault));
     cluster->force_N = setup->q * cluster->solution->integral_mm4;
@@ -61,7 +75,8 @@ static fw_status solve_cluster(const fw_setup *setup, fw_film_memo *memo, fw_clu
     return FW_OK;
 }
 
-/* Forces add; the layer is at the cap when any of its clusters is, else by film when any is. */
+/* Forces add; the layer is at the cap when any of its clusters is, else by film when any is, else
+ * by what its clusters have in common. */
 static void sum_up(fw_peel *out)
 {
     out->force_N = 0;

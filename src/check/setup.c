@@ -20,16 +20,36 @@ static double unsolved_below(const fw_job *job)
     return least / 100;
 }
 
-static void set_loads(fw_setup *setup, const fw_job *job)
+static void set_law(fw_setup *setup, const fw_machine *machine)
 {
-    const fw_resin *resin = &job->resin;
-    const fw_machine *machine = &job->machine;
+    setup->traction =
+        (fw_traction){.law = machine->mode == FW_MODE_FILM ? FW_TRACTION_FILM : FW_TRACTION_TABLE,
+                      .area_MPa = machine->area_kPa / 1000,
+                      .rim_N_mm = machine->rim_N_mm,
+                      .front_mm = machine->front_mm,
+                      .cavity_MPa = machine->cap_kPa / 1000,
+                      .table = &machine->table_mm2_N};
+    setup->q = setup->q_range[0] = setup->q_range[1] = 1;
+    setup->cap_MPa = INFINITY;
+}
+
+static void set_liquid(fw_setup *setup, const fw_resin *resin, const fw_machine *machine)
+{
     setup->q = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s, machine->gap_um);
     for (int end = 0; end < 2; end++)
         setup->q_range[end] = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s,
                                               machine->gap_range_um[end]);
     setup->faster = fw_separation_faster(machine, setup->px_mm, setup->py_mm);
     setup->cap_MPa = machine->cap_kPa / 1000;
+}
+
+static void set_loads(fw_setup *setup, const fw_job *job)
+{
+    const fw_machine *machine = &job->machine;
+    if (machine->mode == FW_MODE_FILM || machine->mode == FW_MODE_MEASURED)
+        set_law(setup, machine);
+    else
+        set_liquid(setup, &job->resin, machine);
     setup->unsolved_N = unsolved_below(job);
 }
 

@@ -34,16 +34,21 @@ typedef struct fw_resin {
 
 /* How a layer is parted from the window. */
 typedef enum fw_mode {
-    FW_MODE_PULL, /* the plate draws straight away */
-    FW_MODE_TILT, /* it turns about a hinge line */
+    FW_MODE_PULL,     /* the plate draws straight away */
+    FW_MODE_TILT,     /* it turns about a hinge line */
+    FW_MODE_FILM,     /* a tensioned film peels off from the rim: a law in area and rim */
+    FW_MODE_MEASURED, /* force against area, measured */
 } fw_mode;
 
 typedef struct fw_machine {
     char name[FW_CARD_TEXT];
     fw_basis basis_separation, basis_frame;
     fw_mode mode;
-    double speed_mm_s;      /* separation speed, at the plate's centre */
-    fw_points hinge_mm;     /* tilt: two points of the hinge line, in the stack's x, y */
+    double speed_mm_s;  /* separation speed, at the plate's centre */
+    fw_points hinge_mm; /* tilt: two points of the hinge line, in the stack's x, y */
+    double area_kPa, rim_N_mm,
+        front_mm;           /* film: per solid area, per open rim, within front_mm of it */
+    fw_points table_mm2_N;  /* measured: areas and forces, both ascending */
     double gap_um;          /* liquid film between layer and window */
     double gap_range_um[2]; /* both gap_um when not given */
     double cap_kPa;         /* suction that the liquid can hold, gauge */

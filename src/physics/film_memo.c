@@ -14,7 +14,7 @@ static const char holder[] = "memo of peel films";
 typedef struct key_head {
     double px_mm, py_mm, limit, tolerance; /* limit: obstacle, or the cap of a curve */
     fw_film_plane faster, wider;
-    int32_t width, height, cell_px, curve;
+    int32_t width, height, cell_px, kind;
     uint32_t film, sealed, cavities, spare;
 } key_head;
 
@@ -125,6 +125,16 @@ void fw_film_memo_trim(fw_film_memo *memo)
 
 /* ---- the key ---- */
 
+typedef enum answer_kind { ANSWER_SOLUTION, ANSWER_CURVE, ANSWER_TRACTION } answer_kind;
+
+typedef struct question {
+    const fw_film_shape *shape;
+    const fw_film_options *options;
+    const fw_traction *traction; /* of ANSWER_TRACTION */
+    double limit;                /* obstacle, or the cap of a curve */
+    answer_kind kind;
+} question;
+
 static size_t rows_bytes(const fw_runs *set)
 {
     return set->row != NULL ? ((size_t)set->height + 1) * sizeof *set->row : 0;
@@ -147,20 +157,20 @@ static unsigned char *append(unsigned char *to, const void *from, size_t bytes)
     return to + bytes;
 }
 
-static void write_key(const fw_film_shape *shape, const fw_film_options *options, double limit,
-                      bool curve, unsigned char *to)
+static void write_key(const question *asked, unsigned char *to)
 {
+    const fw_film_shape *shape = asked->shape;
     const fw_runs *film = &shape->film, *sealed = &shape->sealed;
     key_head head = {.px_mm = shape->px_mm,
                      .py_mm = shape->py_mm,
-                     .limit = limit,
+                     .limit = asked->limit,
                      .faster = shape->faster,
                      .wider = shape->wider,
-                     .tolerance = options->work_tolerance,
+                     .tolerance = asked->options->work_tolerance,
                      .width = film->width,
                      .height = film->height,
-                     .cell_px = options->cell_px,
-                     .curve = curve,
+                     .cell_px = asked->options->cell_px,
+                     .kind = (int32_t)asked->kind,
                      .film = film->count,
                      .sealed = sealed->count,
                      .cavities = shape->cavity_count};
@@ -245,34 +255,39 @@ static void settle(fw_film_memo *memo, entry *new, entry_state state)
     (void)pthread_mutex_unlock(&memo->lock);
 }
 
-static fw_status compute(fw_film_memo *memo, const fw_film_shape *shape,
-                         const fw_film_options *options, double limit, bool curve, entry *new,
-                         fw_fault *fault)
+static fw_status answer(const question *asked, entry *new, fw_fault *fault)
 {
-    const size_t bytes = fw_film_work_bytes(shape, options);
+    if (asked->kind == ANSWER_TRACTION)
+        return fw_traction_solve(asked->shape, asked->traction, &new->solution, fault);
+    if (asked->kind == ANSWER_CURVE)
+        return fw_film_curve_build(asked->shape, asked->options, asked->limit, NULL, &new->curve,
+                                   fault);
+    return fw_film_solve(asked->shape, asked->options, &new->solution, fault);
+}
+
+static fw_status compute(fw_film_memo *memo, const question *asked, entry *new, fw_fault *fault)
+{
+    const size_t bytes = fw_film_work_bytes(asked->shape, asked->options);
     fw_quota_take(memo->at_once, bytes);
-    const fw_status status =
-        curve ? fw_film_curve_build(shape, options, limit, NULL, &new->curve, fault)
-              : fw_film_solve(shape, options, &new->solution, fault);
+    const fw_status status = answer(asked, new, fault);
     fw_quota_give(memo->at_once, bytes);
     return status;
 }
 
-static fw_status ask(fw_film_memo *memo, const fw_film_shape *shape, const fw_film_options *options,
-                     double limit, bool curve, entry **out, fw_fault *fault)
+static fw_status ask(fw_film_memo *memo, const question *asked, entry **out, fw_fault *fault)
 {
     entry *new = NULL;
-    size_t bytes = key_size(shape);
+    const size_t bytes = key_size(asked->shape);
     FW_TRY(fw_allocate((void **)&new, 1, sizeof *new + bytes, holder, fault));
     new->key_bytes = bytes;
-    write_key(shape, options, limit, curve, new->key);
+    write_key(asked, new->key);
     new->hash = hash_of(new->key, bytes);
     *out = claim(memo, new);
     if (*out != new) {
         free(new);
         return FW_OK;
     }
-    const fw_status status = compute(memo, shape, options, limit, curve, new, fault);
+    const fw_status status = compute(memo, asked, new, fault);
     settle(memo, new, status == FW_OK ? SOLVED : FAILED);
     return status;
 }
@@ -281,8 +296,12 @@ fw_status fw_film_memo_solve(fw_film_memo *memo, const fw_film_shape *shape,
                              const fw_film_options *options, const fw_film_solution **out,
                              fw_fault *fault)
 {
+    const question asked = {.shape = shape,
+                            .options = options,
+                            .limit = options->obstacle_mm2,
+                            .kind = ANSWER_SOLUTION};
     entry *found = NULL;
-    FW_TRY(ask(memo, shape, options, options->obstacle_mm2, false, &found, fault));
+    FW_TRY(ask(memo, &asked, &found, fault));
     *out = &found->solution;
     return FW_OK;
 }
@@ -291,8 +310,23 @@ fw_status fw_film_memo_curve(fw_film_memo *memo, const fw_film_shape *shape,
                              const fw_film_options *options, double cap_MPa,
                              const fw_film_curve **out, fw_fault *fault)
 {
+    const question asked = {
+        .shape = shape, .options = options, .limit = cap_MPa, .kind = ANSWER_CURVE};
     entry *found = NULL;
-    FW_TRY(ask(memo, shape, options, cap_MPa, true, &found, fault));
+    FW_TRY(ask(memo, &asked, &found, fault));
     *out = &found->curve;
+    return FW_OK;
+}
+
+fw_status fw_film_memo_traction(fw_film_memo *memo, const fw_film_shape *shape,
+                                const fw_traction *traction, const fw_film_solution **out,
+                                fw_fault *fault)
+{
+    const fw_film_options options = {0};
+    const question asked = {
+        .shape = shape, .options = &options, .traction = traction, .kind = ANSWER_TRACTION};
+    entry *found = NULL;
+    FW_TRY(ask(memo, &asked, &found, fault));
+    *out = &found->solution;
     return FW_OK;
 }

@@ -19,6 +19,7 @@
 #include "fault/memory.h"
 #include "physics/film.h"
 #include "physics/film_curve.h"
+#include "physics/traction.h"
 
 typedef struct fw_film_memo fw_film_memo;
 
@@ -35,6 +36,12 @@ fw_status fw_film_memo_solve(fw_film_memo *memo, const fw_film_shape *shape,
 fw_status fw_film_memo_curve(fw_film_memo *memo, const fw_film_shape *shape,
                              const fw_film_options *options, double cap_MPa,
                              const fw_film_curve **out, fw_fault *fault);
+
+/* As fw_traction_solve. All calls of one memo must be for the same law: it is no part of the key.
+ */
+fw_status fw_film_memo_traction(fw_film_memo *memo, const fw_film_shape *shape,
+                                const fw_traction *traction, const fw_film_solution **out,
+                                fw_fault *fault);
 
 /* Between batches, by one thread while nobody else calls: frees what was kept aside, and, if there
  * was any, also the entries that nobody asked for since the trim before. */

@@ -125,8 +125,9 @@ static void print_peel(printer *p, const fw_report *report)
     line(p, "peak peel load: %s N in layer %d, limited by %s", figure(totals->peak_peel_N).text,
          totals->peak_layer,
          fw_limit_name(known ? report->layer[totals->peak_layer].limited_by : FW_BY_NOTHING));
-    line(p, "over the card's gap range: %s to %s N", figure(totals->peak_range_N[0]).text,
-         figure(totals->peak_range_N[1]).text);
+    if (isfinite(totals->peak_range_N[0]))
+        line(p, "over the card's gap range: %s to %s N", figure(totals->peak_range_N[0]).text,
+             figure(totals->peak_range_N[1]).text);
     line(p, "layers at the cap: %d; layers on the bound, unsolved: %d", totals->capped_layers,
          totals->bound_layers);
 }

@@ -319,14 +319,54 @@ static void refuses_names_that_are_too_long(void **state)
     check_line(&fault, path, ":1: name: is longer than 127 bytes");
 }
 
+/* The laws that know no liquid: what they need, and what they refuse. */
+static void reads_measured_laws(void **state)
+{
+    (void)state;
+    static const char rest[] = "plate: {size_mm: [64, 40]}\n";
+    static const bad_case text[] = {
+        {"{mode: film, area_kPa: 12, rim_N_mm: 0.02}", "", NULL},
+        {"{mode: film, area_kPa: 12, rim_N_mm: 0.02, front_mm: 1, cap_kPa: 90}", "", NULL},
+        {"{mode: film, area_kPa: 12}", "", ":2: separation.mode: film needs rim_N_mm"},
+        {"{mode: measured, table_mm2_N: [[10, 1], [20, 1.5]]}", "", NULL},
+        {"{mode: measured}", "", ":2: separation.mode: measured needs table_mm2_N"},
+        {"{mode: measured, table_mm2_N: []}", "", ":2: separation.table_mm2_N: is empty"},
+        {"{mode: measured, table_mm2_N: [[0, 0], [10, 1]]}", "",
+         ":2: separation.table_mm2_N: pair 1 does not grow"},
+        {"{mode: measured, table_mm2_N: [[10, 2], [20, 1]]}", "",
+         ":2: separation.table_mm2_N: pair 2 does not grow"},
+        {"{mode: measured, table_mm2_N: [[10, 2], [10, 3]]}", "",
+         ":2: separation.table_mm2_N: pair 2 does not grow"},
+        {"{mode: measured, cap_kPa: 90, table_mm2_N: [[10, 2]]}", "",
+         ":2: separation.cap_kPa: means nothing in mode: measured"},
+    };
+    for (size_t i = 0; i < sizeof text / sizeof *text; i++) {
+        char card[512];
+        fw_machine m;
+        fw_fault fault = {0};
+        (void)snprintf(card, sizeof card, "name: M\nseparation: %s\n%s", text[i].from, rest);
+        const char *path = scratch_text("card.yaml", card);
+        const fw_status status = fw_machine_read(path, &m, &fault);
+        assert_int_equal(status, text[i].wanted == NULL ? FW_OK : FW_INPUT);
+        if (text[i].wanted != NULL)
+            check_line(&fault, path, text[i].wanted);
+    }
+}
+
 static void refuses_bad_machines(void **state)
 {
     (void)state;
     static const bad_case bad[] = {
         {"mode: pull", "mode: slide",
-         ":2: separation.mode: 'slide': this version computes pull and tilt"},
-        {"mode: pull", "mode: tilt", ":2: separation.mode: tilt needs a hinge line"},
-        {"mode: pull", "mode: pull, hinge_mm: [[0, 0], [0, 1]]", ":2: separation.hinge_mm: is for"},
+         ":2: separation.mode: 'slide': this version computes pull, tilt, film and measured"},
+        {"mode: pull", "mode: tilt", ":2: separation.mode: tilt needs hinge_mm"},
+        {"speed_mm_s: 1.0, ", "", ":2: separation.mode: pull needs speed_mm_s"},
+        {"gap_um: 100,", "", ":2: separation.mode: pull needs gap_um"},
+        {"mode: pull", "mode: film", ":2: separation.speed_mm_s: means nothing in mode: film"},
+        {"mode: pull", "mode: pull, area_kPa: 1",
+         ":2: separation.area_kPa: means nothing in mode: pull"},
+        {"mode: pull", "mode: pull, hinge_mm: [[0, 0], [0, 1]]",
+         ":2: separation.hinge_mm: means nothing in mode: pull"},
         {"mode: pull", "mode: tilt, hinge_mm: [[0, 0]]", ":2: separation.hinge_mm: is no line"},
         {"mode: pull", "mode: tilt, hinge_mm: [[1, 2], [1, 2]]",
          ":2: separation.hinge_mm: is no line"},
@@ -450,6 +490,7 @@ int main(void)
         cmocka_unit_test(absolute_card_paths_stay),
         cmocka_unit_test(refuses_bad_resins),
         cmocka_unit_test(refuses_names_that_are_too_long),
+        cmocka_unit_test(reads_measured_laws),
         cmocka_unit_test(refuses_bad_machines),
         cmocka_unit_test(refuses_a_layer_that_cannot_cure),
         cmocka_unit_test(refuses_hostile_sizes),

@@ -374,6 +374,34 @@ static void tilt_over_the_gap_range(void **state)
     assert_true(at[0] > at[1]);
 }
 
+/* Laws in area and rim: of two blocks and of one with a sealed hole, in the judge's units. */
+static void measured_laws(void **state)
+{
+    (void)state;
+    for (int mode = FW_MODE_FILM; mode <= FW_MODE_MEASURED; mode++) {
+        layer l = {.stage = stage_new(300, 160, 1)};
+        fluid(&l.stage, 100);
+        stage_box(&l.stage, 10, 10, 0, 110, 110, 1, 255);
+        stage_box(&l.stage, 150, 20, 0, 250, 120, 1, 255);
+        stage_box(&l.stage, 180, 50, 0, 220, 90, 1, 0);
+        fw_machine *machine = &l.stage.job.machine;
+        machine->mode = (fw_mode)mode;
+        machine->area_kPa = 10;
+        machine->rim_N_mm = 0.02;
+        machine->front_mm = 2;
+        machine->cap_kPa = 100;
+        machine->table_mm2_N = (fw_points){2, {{50, 1}, {150, 4}}};
+        solve(&l, SEALED_HOLES);
+        assert_int_equal(l.peel.count, 2);
+        const double film_N = 0.01 * (100 + 84) + 0.02 * 80 + 0.1 * 16, table_N = 2 * 2.5;
+        assert_near(l.peel.force_N, mode == FW_MODE_FILM ? film_N : table_N, 0.03);
+        assert_int_equal(l.peel.limited_by, mode == FW_MODE_FILM ? FW_BY_FILM : FW_BY_TABLE);
+        assert_int_equal(fw_peel_range(&l.setup, l.memo, &l.peel, NULL), FW_OK);
+        assert_near(l.peel.range_N[0], l.peel.force_N, 1e-12);
+        layer_free(&l);
+    }
+}
+
 static void nothing_pulls_nothing(void **state)
 {
     (void)state;
@@ -400,6 +428,7 @@ int main(void)
                                        cmocka_unit_test(range_agrees_with_direct_solves),
                                        cmocka_unit_test(range_stays_under_the_cap),
                                        cmocka_unit_test(slots_forget),
+                                       cmocka_unit_test(measured_laws),
                                        cmocka_unit_test(a_plate_that_tilts),
                                        cmocka_unit_test(tilt_over_the_gap_range),
                                        cmocka_unit_test(nothing_pulls_nothing)};
