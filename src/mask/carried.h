@@ -78,7 +78,7 @@ typedef struct fw_carried_peak {
 /* Fills per_region[regions->count] for the regions of the newest layer. A saturated pixel is over
  * any limit. limit_mm >= 0 and a value are compared in stored units, the limit rounded down, so
  * that a ledge of exactly the limit is not over. Cost O(height + runs + tiles + pixels in tiles
- * that hold a value). */
+ * that may hold one over it). */
 fw_status fw_carried_over(const fw_carried *field, double limit_mm, fw_carried_peak *per_region,
                           fw_fault *fault);
 

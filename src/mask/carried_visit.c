@@ -43,20 +43,28 @@ typedef fw_status run_visitor(void *context, uint32_t run, int32_t y, int32_t x0
 typedef struct walk {
     const fw_carried *field;
     uint32_t limit;       /* units: over means more */
-    int32_t *next_active; /* [tiles_x + 1] first column >= this one whose tile holds a value */
+    int32_t *next_active; /* [tiles_x + 1] first column >= this one whose tile may be over */
     double *value_mm;     /* [width] of the open stretch, from its first pixel */
     int32_t x0, x1;       /* open stretch; none where x0 == x1 */
     run_visitor *visit;
     void *context;
 } walk;
 
+/* A tile whose largest value is paid down to the limit needs no look at its pixels, unless some of
+ * them are unknown: those count as over whatever the limit. */
+static bool may_be_over(const walk *w, size_t index)
+{
+    const fw_tile *tile = w->field->tile[index];
+    return w->field->unknown_in_tile[index] > 0 ||
+           (tile != NULL && tile->base + tile->top - w->field->paid > w->limit);
+}
+
 static void find_active(walk *w, int32_t tile_row)
 {
     const fw_carried *field = w->field;
     w->next_active[field->tiles_x] = field->tiles_x;
     for (int32_t column = field->tiles_x - 1; column >= 0; column--) {
-        const size_t index = fw_tile_index(field, column, tile_row);
-        const bool active = field->tile[index] != NULL || field->unknown_in_tile[index] > 0;
+        const bool active = may_be_over(w, fw_tile_index(field, column, tile_row));
         w->next_active[column] = active ? column : w->next_active[column + 1];
     }
 }
