@@ -56,6 +56,8 @@ static fw_status allocate_planes(fw_carried *field, int32_t width, int32_t heigh
                        FW_CARRIED_HOLDER, fault));
     FW_TRY(fw_allocate((void **)&field->tile_woken, tiles, sizeof *field->tile_woken,
                        FW_CARRIED_HOLDER, fault));
+    FW_TRY(fw_allocate((void **)&field->woken_tile, tiles, sizeof *field->woken_tile,
+                       FW_CARRIED_HOLDER, fault));
     return fw_runs_begin(&field->medium_runs, width, height, fault);
 }
 
@@ -90,6 +92,7 @@ void fw_carried_free(fw_carried *field)
     free(field->tile);
     free(field->unknown_in_tile);
     free(field->tile_woken);
+    free(field->woken_tile);
     fw_steps_free(&field->steps);
     fw_bitplane_free(&field->medium);
     fw_bitplane_free(&field->unknown);
@@ -225,7 +228,7 @@ fw_status fw_carried_step(fw_carried *field, const fw_runs *now, const fw_region
     FW_TRY(follow_finite(field, fault));
     if (sources != NULL)
         fw_carried_source(field, sources);
-    return fw_carried_settle(field, true, fault);
+    return fw_carried_settle(field, FW_CHANGED_CREDIT, fault);
 }
 
 /* Makes the regions that hold a source finite; true in *grown where one was not. */
@@ -253,5 +256,5 @@ fw_status fw_carried_add_sources(fw_carried *field, const fw_runs *sources, fw_f
     bool grown = false;
     FW_TRY(hold_regions(field, sources, &grown, fault));
     fw_carried_source(field, sources);
-    return fw_carried_settle(field, grown, fault);
+    return fw_carried_settle(field, grown ? FW_CHANGED_MEDIUM : FW_CHANGED_SOURCES, fault);
 }

@@ -81,8 +81,11 @@ void fw_carried_pay(fw_carried *field, double credit_units)
 
 static void wake(fw_carried *field, int32_t y, int32_t column, uint32_t mask)
 {
+    const size_t index = fw_tile_index(field, column, y / FW_TILE);
     *fw_bitplane_word(&field->woken, y, column) |= mask;
-    field->tile_woken[fw_tile_index(field, column, y / FW_TILE)] = 1;
+    if (field->tile_woken[index] == 0)
+        field->woken_tile[field->woken_tiles++] = (uint32_t)index;
+    field->tile_woken[index] = 1;
 }
 
 static void enter_word(fw_carried *field, int32_t y, int32_t column, uint32_t mask)

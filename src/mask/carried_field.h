@@ -48,6 +48,8 @@ struct fw_carried {
     fw_tile **tile;            /* [tiles_y * tiles_x], NULL where nothing is stored */
     uint16_t *unknown_in_tile; /* [tiles_y * tiles_x] pixels */
     uint8_t *tile_woken;       /* [tiles_y * tiles_x] holds a woken pixel */
+    uint32_t *woken_tile;      /* [woken_tiles] these tiles, each once; room for all of them */
+    size_t woken_tiles;
     double credits;            /* units, sum of all credits */
     int64_t paid;              /* the same, rounded down once: debts are never low */
     bool started;              /* there was a first step */
@@ -97,8 +99,15 @@ void fw_carried_enter(fw_carried *field, const fw_runs *fresh);
 void fw_carried_leave(fw_carried *field, const fw_runs *gone);
 void fw_carried_source(fw_carried *field, const fw_runs *sources);
 
-/* Makes the values a fixed point again after pixels woke: march_all also looks along the edge of
- * everything unknown, which a payment of credit moves. Clears what woke. */
-fw_status fw_carried_settle(fw_carried *field, bool march_all, fw_fault *fault);
+/* What has changed since the values were a fixed point. */
+typedef enum fw_carried_change {
+    FW_CHANGED_SOURCES, /* known pixels woke */
+    FW_CHANGED_MEDIUM,  /* pixels entered too: they are unknown beside what is known */
+    FW_CHANGED_CREDIT,  /* and a payment moved the edge of everything unknown */
+} fw_carried_change;
+
+/* Makes the values a fixed point again. Clears what woke. Looks round woken tiles alone, unless
+ * credit was paid. */
+fw_status fw_carried_settle(fw_carried *field, fw_carried_change change, fw_fault *fault);
 
 #endif

@@ -206,53 +206,76 @@ static fw_status gather_tile(fw_carried *field, look who, int32_t column, int32_
     return FW_OK;
 }
 
-/* A woken pixel in this tile or one of the eight round it: steps reach no further. */
-static bool woken_near(const fw_carried *field, int32_t column, int32_t row)
+/* The first woken tile among this one and the eight round it. */
+static size_t first_woken_near(const fw_carried *field, int32_t column, int32_t row)
 {
     for (int32_t r = row - (row > 0); r <= row + 1 && r < field->tiles_y; r++) {
         for (int32_t c = column - (column > 0); c <= column + 1 && c < field->tiles_x; c++) {
             if (field->tile_woken[fw_tile_index(field, c, r)] != 0)
-                return true;
+                return fw_tile_index(field, c, r);
         }
     }
-    return false;
+    return SIZE_MAX;
 }
 
-static fw_status gather(fw_carried *field, bool march_all, fw_fault *fault)
+/* Steps reach no further than the tiles round a woken one. A tile with several woken ones round it
+ * is left to the first of them. */
+static fw_status gather_round(fw_carried *field, size_t woken, bool entered, fw_fault *fault)
 {
-    field->pending.count = 0;
-    for (int32_t row = 0; row < field->tiles_y; row++) {
-        for (int32_t column = 0; column < field->tiles_x; column++) {
-            const size_t index = fw_tile_index(field, column, row);
+    const int32_t column = (int32_t)(woken % (size_t)field->tiles_x);
+    const int32_t row = (int32_t)(woken / (size_t)field->tiles_x);
+    for (int32_t r = row - (row > 0); r <= row + 1 && r < field->tiles_y; r++) {
+        for (int32_t c = column - (column > 0); c <= column + 1 && c < field->tiles_x; c++) {
+            const size_t index = fw_tile_index(field, c, r);
             const bool unknown = field->unknown_in_tile[index] > 0;
-            if (!unknown && field->tile[index] == NULL)
-                continue; /* all 0: nothing to shorten */
-            if (unknown && march_all)
-                FW_TRY(gather_tile(field, UNKNOWN_BY_KNOWN, column, row, fault));
-            if (woken_near(field, column, row))
-                FW_TRY(gather_tile(field, SLEEPER_BY_WOKEN, column, row, fault));
+            if ((!unknown && field->tile[index] == NULL) || /* all 0: nothing to shorten */
+                first_woken_near(field, c, r) != woken)
+                continue;
+            if (unknown && entered)
+                FW_TRY(gather_tile(field, UNKNOWN_BY_KNOWN, c, r, fault));
+            FW_TRY(gather_tile(field, SLEEPER_BY_WOKEN, c, r, fault));
         }
     }
     return FW_OK;
 }
 
+static fw_status gather_unknown(fw_carried *field, fw_fault *fault)
+{
+    for (int32_t row = 0; row < field->tiles_y; row++) {
+        for (int32_t column = 0; column < field->tiles_x; column++) {
+            if (field->unknown_in_tile[fw_tile_index(field, column, row)] > 0)
+                FW_TRY(gather_tile(field, UNKNOWN_BY_KNOWN, column, row, fault));
+        }
+    }
+    return FW_OK;
+}
+
+static fw_status gather(fw_carried *field, fw_carried_change change, fw_fault *fault)
+{
+    field->pending.count = 0;
+    if (change == FW_CHANGED_CREDIT)
+        FW_TRY(gather_unknown(field, fault));
+    for (size_t i = 0; i < field->woken_tiles; i++)
+        FW_TRY(gather_round(field, field->woken_tile[i], change == FW_CHANGED_MEDIUM, fault));
+    return FW_OK;
+}
+
 static void sleep_again(fw_carried *field)
 {
-    const size_t tiles = (size_t)field->tiles_x * (size_t)field->tiles_y;
-    for (size_t i = 0; i < tiles; i++) {
-        if (field->tile_woken[i] == 0)
-            continue;
-        field->tile_woken[i] = 0;
-        const int32_t column = (int32_t)(i % (size_t)field->tiles_x);
-        const int32_t first = (int32_t)(i / (size_t)field->tiles_x) * FW_TILE;
+    for (size_t i = 0; i < field->woken_tiles; i++) {
+        const uint32_t index = field->woken_tile[i];
+        const int32_t column = (int32_t)(index % (uint32_t)field->tiles_x);
+        const int32_t first = (int32_t)(index / (uint32_t)field->tiles_x) * FW_TILE;
+        field->tile_woken[index] = 0;
         for (int32_t y = first; y < field->height && y < first + FW_TILE; y++)
             *fw_bitplane_word(&field->woken, y, column) = 0;
     }
+    field->woken_tiles = 0;
 }
 
-fw_status fw_carried_settle(fw_carried *field, bool march_all, fw_fault *fault)
+fw_status fw_carried_settle(fw_carried *field, fw_carried_change change, fw_fault *fault)
 {
-    fw_status status = gather(field, march_all, fault);
+    fw_status status = gather(field, change, fault);
     sleep_again(field);
     field->heap.count = 0;
     for (size_t i = 0; status == FW_OK && i < field->pending.count; i++) {

@@ -26,7 +26,7 @@ double fw_carried_unit(const fw_carried *field)
 size_t fw_carried_bytes(const fw_carried *field)
 {
     const size_t tiles = (size_t)field->tiles_x * (size_t)field->tiles_y;
-    size_t bytes = sizeof *field + tiles * (sizeof(fw_tile *) + 3) +
+    size_t bytes = sizeof *field + tiles * (sizeof(fw_tile *) + 7) +
                    3 * field->medium.stride * (size_t)field->height * sizeof(uint32_t);
     for (size_t i = 0; i < tiles; i++)
         bytes += field->tile[i] != NULL ? sizeof(fw_tile) : 0;

@@ -51,20 +51,9 @@ bool fw_tips_possible(void *tips_at, double x_mm, double y_mm)
     return fw_route_possible(at->tipping->lattice, at->tipping->route, x_mm, y_mm, at->face_mm);
 }
 
-/* Notes the contact of a tip with this layer's solid, for the tributary share. */
-static fw_status note_contact(fw_sheet *sheet, int32_t post, const fw_runs *footprint,
-                              fw_fault *fault)
+static fw_disc disc_of(const fw_post *post)
 {
-    fw_runs *contact = NULL;
-    FW_TRY(fw_contacts_add(&sheet->contacts, post, &contact, fault));
-    return fw_runs_intersect(footprint, fw_slice_solid(&sheet->slice), contact, fault);
-}
-
-static fw_status footprint_of(const fw_tipping *tipping, const fw_post *post, fw_runs *out,
-                              fw_fault *fault)
-{
-    const fw_disc disc = {post->path[0].x, post->path[0].y, post->tip_mm};
-    return fw_disc_footprint(tipping->screen, &disc, out, fault);
+    return (fw_disc){post->path[0].x, post->path[0].y, post->tip_mm};
 }
 
 static void hold_regions(fw_sheet *sheet, const fw_runs *set)
@@ -77,54 +66,73 @@ static void hold_regions(fw_sheet *sheet, const fw_runs *set)
     }
 }
 
-/* A tip that an earlier round placed in this layer holds it from the start. */
-static fw_status apply_known(const fw_tipping *tipping, const fw_newest *newest,
-                             const fw_post *post, fw_fault *fault)
+/* Tips that an earlier round placed in this layer hold it from the start. */
+static fw_status hold_by_known(const fw_tipping *tipping, const fw_newest *newest,
+                               const fw_disc *tips, size_t count, fw_fault *fault)
 {
     fw_sheet *sheet = newest->sheet;
-    fw_runs footprint = {0}, within = {0};
-    fw_status status = footprint_of(tipping, post, &footprint, fault);
+    fw_runs footprints = {0}, within = {0};
+    fw_status status = fw_discs_footprint(tipping->screen, tips, count, &footprints, fault);
     if (status == FW_OK)
-        status = fw_runs_intersect(&footprint, &sheet->slice.intended, &within, fault);
+        status = fw_runs_intersect(&footprints, &sheet->slice.intended, &within, fault);
     if (status == FW_OK && within.count > 0) {
         hold_regions(sheet, &within);
         status = fw_carried_add_sources(newest->field, &within, fault);
     }
-    if (status == FW_OK)
-        status = note_contact(sheet, post->id, &footprint, fault);
-    fw_runs_free(&footprint);
+    fw_runs_free(&footprints);
     fw_runs_free(&within);
     return status;
 }
 
-static fw_status apply_all_known(fw_tipping *tipping, const fw_newest *newest, fw_fault *fault)
+/* The contact of a post that stands in the list, for the tributary share. */
+static fw_status note_post(const fw_tipping *tipping, fw_sheet *sheet, const fw_post *post,
+                           fw_fault *fault)
 {
-    for (; tipping->next_known < tipping->known; tipping->next_known++) {
-        const fw_post *post = &tipping->posts->item[tipping->next_known];
-        if (post->tip_layer > newest->sheet->layer)
-            break;
-        if (post->tip_layer == newest->sheet->layer)
-            FW_TRY(apply_known(tipping, newest, post, fault));
-    }
-    return FW_OK;
+    fw_runs footprint = {0}, *contact = NULL;
+    const fw_disc disc = disc_of(post);
+    fw_status status = fw_disc_footprint(tipping->screen, &disc, &footprint, fault);
+    if (status == FW_OK)
+        status = fw_contacts_add(&sheet->contacts, post->id, &contact, fault);
+    if (status == FW_OK)
+        status = fw_runs_intersect(&footprint, fw_slice_solid(&sheet->slice), contact, fault);
+    fw_runs_free(&footprint);
+    return status;
+}
+
+/* All at once: the debt is settled once. */
+static fw_status apply_known(fw_tipping *tipping, const fw_newest *newest, fw_fault *fault)
+{
+    const fw_post *posts = tipping->posts->item;
+    const int32_t layer = newest->sheet->layer;
+    while (tipping->next_known < tipping->known && posts[tipping->next_known].tip_layer < layer)
+        tipping->next_known++;
+    const size_t first = tipping->next_known;
+    while (tipping->next_known < tipping->known && posts[tipping->next_known].tip_layer == layer)
+        tipping->next_known++;
+    const size_t count = tipping->next_known - first;
+    fw_disc *tips = NULL;
+    if (count == 0)
+        return FW_OK;
+    FW_TRY(fw_allocate((void **)&tips, count, sizeof *tips, "tips of a layer", fault));
+    for (size_t i = 0; i < count; i++)
+        tips[i] = disc_of(&posts[first + i]);
+    fw_status status = hold_by_known(tipping, newest, tips, count, fault);
+    free(tips);
+    for (size_t i = 0; i < count && status == FW_OK; i++)
+        status = note_post(tipping, newest->sheet, &posts[first + i], fault);
+    return status;
 }
 
 static fw_status add_posts(fw_tipping *tipping, fw_sheet *sheet, const fw_tips *tips,
                            fw_fault *fault)
 {
-    fw_runs footprint = {0};
-    fw_status status = FW_OK;
-    for (size_t i = 0; i < tips->count && status == FW_OK; i++) {
+    for (size_t i = 0; i < tips->count; i++) {
         const fw_post post = fw_tip_post(tipping->rules, tipping->setup->t_mm, sheet->layer,
                                          tips->item[i].x_mm, tips->item[i].y_mm);
-        status = fw_posts_append(tipping->posts, &post, fault);
-        if (status == FW_OK)
-            status = footprint_of(tipping, &post, &footprint, fault);
-        if (status == FW_OK)
-            status = note_contact(sheet, (int32_t)tipping->posts->count - 1, &footprint, fault);
+        FW_TRY(fw_posts_append(tipping->posts, &post, fault));
+        FW_TRY(note_post(tipping, sheet, &tipping->posts->item[tipping->posts->count - 1], fault));
     }
-    fw_runs_free(&footprint);
-    return status;
+    return FW_OK;
 }
 
 /* A place that needs a tip but has no way to the plate is kept as a post without a path: it shows
@@ -170,7 +178,7 @@ fw_status fw_tips_place(void *context, const fw_newest *newest, fw_fault *fault)
 {
     fw_tipping *tipping = context;
     fw_runs fresh = {0};
-    FW_TRY(apply_all_known(tipping, newest, fault));
+    FW_TRY(apply_known(tipping, newest, fault));
     fw_status status = fw_runs_subtract(&newest->sheet->slice.intended,
                                         &newest->before->slice.intended, &fresh, fault);
     if (status == FW_OK && fresh.count > 0)

@@ -1,6 +1,9 @@
 #include "posts/disc.h"
 
+#include "fault/memory.h"
+
 #include <math.h>
+#include <stdlib.h>
 
 static int32_t level_at_most(const fw_screen *screen, int32_t grey)
 {
@@ -199,4 +202,56 @@ fw_status fw_disc_footprint(const fw_screen *screen, const fw_disc *disc, fw_run
     }
     fw_runs_finish(out);
     return FW_OK;
+}
+
+typedef struct pile_run {
+    int32_t y, x0, x1;
+} pile_run;
+
+typedef struct pile {
+    pile_run *item; /* [count] */
+    size_t count, capacity;
+} pile;
+
+static int in_raster_order(const void *left, const void *right)
+{
+    const pile_run *a = left, *b = right;
+    return a->y != b->y ? (a->y < b->y ? -1 : 1) : (a->x0 > b->x0) - (a->x0 < b->x0);
+}
+
+static fw_status pile_up(const fw_screen *screen, const fw_disc *disc, pile *out, fw_fault *fault)
+{
+    int32_t y0, y1;
+    fw_disc_rows(screen, disc, &y0, &y1);
+    for (int32_t y = y0; y < y1; y++) {
+        fw_run run = fw_disc_row_footprint(screen, disc, y);
+        FW_TRY(fw_grow((void **)&out->item, &out->capacity, out->count + 1, sizeof *out->item,
+                       "discs of a layer", fault));
+        out->item[out->count++] = (pile_run){y, run.x0, run.x1};
+    }
+    return FW_OK;
+}
+
+static fw_status level_out(const fw_screen *screen, const pile *from, fw_runs *out, fw_fault *fault)
+{
+    FW_TRY(fw_runs_begin(out, screen->width, screen->height, fault));
+    if (from->count > 0)
+        qsort(from->item, from->count, sizeof *from->item, in_raster_order);
+    for (size_t i = 0; i < from->count; i++)
+        FW_TRY(fw_runs_push(out, from->item[i].y, from->item[i].x0, from->item[i].x1, fault));
+    fw_runs_finish(out);
+    return FW_OK;
+}
+
+fw_status fw_discs_footprint(const fw_screen *screen, const fw_disc *discs, size_t count,
+                             fw_runs *out, fw_fault *fault)
+{
+    pile all = {0};
+    fw_status status = FW_OK;
+    for (size_t i = 0; i < count && status == FW_OK; i++)
+        status = pile_up(screen, &discs[i], &all, fault);
+    if (status == FW_OK)
+        status = level_out(screen, &all, out, fault);
+    free(all.item);
+    return status;
 }

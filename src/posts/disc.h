@@ -59,4 +59,8 @@ bool fw_disc_holds(const fw_screen *screen, const fw_disc *disc, int32_t least, 
 fw_status fw_disc_footprint(const fw_screen *screen, const fw_disc *disc, fw_runs *out,
                             fw_fault *fault);
 
+/* out = fw_disc_footprint of all discs together. */
+fw_status fw_discs_footprint(const fw_screen *screen, const fw_disc *discs, size_t count,
+                             fw_runs *out, fw_fault *fault);
+
 #endif

@@ -37,20 +37,43 @@ static fw_stand stand_at(const fw_place_ground *g, uint32_t region, double x_mm,
     return routed ? fit : FW_STAND_NOT;
 }
 
-/* Adds a tip to the list and its contact to the field. */
+/* Adds a tip to the list. Its contact joins the field with the others', before that is read again.
+ */
 static fw_status add_tip(fw_place_ground *g, uint32_t region, fw_tip tip, fw_fault *fault)
 {
-    fw_disc disc = {tip.x_mm, tip.y_mm, g->rules->tip_mm};
-    fw_runs foot = {0}, contact = {0};
-    fw_status status = fw_disc_footprint(g->screen, &disc, &foot, fault);
+    g->held[region] = 1;
+    return fw_tips_push(g->out, tip, fault);
+}
+
+static fw_status contact_of_new(const fw_place_ground *g, fw_runs *contact, fw_fault *fault)
+{
+    const size_t count = g->out->count - g->in_field;
+    const fw_tip *tip = g->out->item + g->in_field;
+    fw_disc *discs = NULL;
+    fw_runs feet = {0};
+    FW_TRY(fw_allocate((void **)&discs, count, sizeof *discs, holder, fault));
+    for (size_t n = 0; n < count; n++)
+        discs[n] = (fw_disc){tip[n].x_mm, tip[n].y_mm, g->rules->tip_mm};
+    fw_status status = fw_discs_footprint(g->screen, discs, count, &feet, fault);
     if (status == FW_OK)
-        status = fw_runs_intersect(&foot, g->now, &contact, fault);
+        status = fw_runs_intersect(&feet, g->now, contact, fault);
+    free(discs);
+    fw_runs_free(&feet);
+    return status;
+}
+
+/* Gives the contacts of all new tips to the field at once: settling it costs more than a tip. */
+static fw_status tell_field(fw_place_ground *g, fw_fault *fault)
+{
+    fw_runs contact = {0};
+    if (g->in_field == g->out->count)
+        return FW_OK;
+    fw_status status = contact_of_new(g, &contact, fault);
     if (status == FW_OK)
         status = fw_carried_add_sources(g->field, &contact, fault);
-    fw_runs_free(&foot);
     fw_runs_free(&contact);
-    g->held[region] = 1;
-    return status == FW_OK ? fw_tips_push(g->out, tip, fault) : status;
+    g->in_field = g->out->count;
+    return status;
 }
 
 /* ---- the grid of one region's exposed face ---- */
@@ -227,6 +250,7 @@ static fw_status note_over(void *context, int32_t y, int32_t x0, int32_t x1, con
 /* Lists the pixels over the reach in raster order. */
 static fw_status list_over(fw_place_ground *g, fw_fault *fault)
 {
+    FW_TRY(tell_field(g, fault));
     g->over_count = 0;
     return fw_carried_visit(g->field, g->rules->reach_mm, note_over, g, fault);
 }
@@ -287,7 +311,9 @@ static fw_status cover_all(fw_place_ground *g, fw_fault *fault)
                 status = hold_anywhere(g, n, fault);
         } else if (g->held[n] && exposed_box[n].x1 > 0) {
             all = widen(g, &exposed_box[n], r);
-            status = cover_region(g, n, &all, fault);
+            status = tell_field(g, fault); /* a tip beside it may have touched it */
+            if (status == FW_OK)
+                status = cover_region(g, n, &all, fault);
         }
     }
     free(exposed_box);
@@ -471,7 +497,8 @@ fw_status fw_place_layer(const fw_place_rules *rules, fw_carried *field, const f
                          .held = held,
                          .possible = possible,
                          .context = context,
-                         .out = out};
+                         .out = out,
+                         .in_field = out->count};
     fw_status status = place_on(&g, missed, fault);
     fw_place_ground_close(&g);
     return status;

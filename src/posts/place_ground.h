@@ -24,6 +24,7 @@ typedef struct fw_place_ground {
     fw_place_possible possible;
     void *context;
     fw_tips *out;
+    size_t in_field;     /* tips of out whose contacts are sources of the field by now */
     fw_runs whole;       /* of fresh: the whole smallest tip lies on fresh */
     fw_runs inside;      /* of fresh: the whole smallest tip lies on the layer */
     fw_place_spot *over; /* [over_count] pixels over the reach */
