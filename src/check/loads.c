@@ -13,11 +13,10 @@ static place place_of_run(const fw_sheet *sheet, uint32_t run, int32_t x, int32_
     return (place){fw_slice_solid_regions(&sheet->slice)->label[run], x, y};
 }
 
-/* The run of row y that is nearest to x, or UINT32_MAX in an empty row. */
-static uint32_t nearest_run(const fw_runs *set, int32_t x, int32_t y)
+/* The first run of row y that ends after x, or the row's end. */
+static uint32_t first_after(const fw_runs *set, int32_t x, int32_t y)
 {
-    const uint32_t first = set->row[y], end = set->row[y + 1];
-    uint32_t low = first, high = end;
+    uint32_t low = set->row[y], high = set->row[y + 1];
     while (low < high) {
         const uint32_t middle = low + (high - low) / 2;
         if (set->run[middle].x1 <= x)
@@ -25,6 +24,14 @@ static uint32_t nearest_run(const fw_runs *set, int32_t x, int32_t y)
         else
             high = middle;
     }
+    return low;
+}
+
+/* The run of row y that is nearest to x, or UINT32_MAX in an empty row. */
+static uint32_t nearest_run(const fw_runs *set, int32_t x, int32_t y)
+{
+    const uint32_t first = set->row[y], end = set->row[y + 1];
+    const uint32_t low = first_after(set, x, y);
     if (low == end)
         return end > first ? end - 1 : UINT32_MAX;
     const bool left_is_nearer = low > first && x - set->run[low - 1].x1 + 1 < set->run[low].x0 - x;
@@ -66,35 +73,84 @@ static fw_status hand_to_posts(const fw_sheet *sheet, uint32_t region, double fo
     return FW_OK;
 }
 
+/* `owner` is the one at the place. */
+static fw_status hand_to_owner(const fw_sheet *sheet, uint32_t region, int32_t owner,
+                               double force_N, const fw_load_taker *taker, fw_fault *fault)
+{
+    if (sheet->posts_only[region])
+        return hand_to_posts(sheet, region, force_N, taker, fault);
+    return taker->anchor(taker->context, owner, force_N, fault);
+}
+
 static fw_status hand_out_at(const fw_sheet *sheet, const fw_tributary *tributary, place at,
                              double force_N, const fw_load_taker *taker, fw_fault *fault)
 {
-    if (sheet->posts_only[at.region])
-        return hand_to_posts(sheet, at.region, force_N, taker, fault);
     const int32_t owner = fw_tributary_owner(tributary, at.region, at.x, at.y);
-    return taker->anchor(taker->context, owner, force_N, fault);
+    return hand_to_owner(sheet, at.region, owner, force_N, taker, fault);
 }
 
 /* Who takes a piece of load: owners of a few places in a block of film, each as often as it owns.
  */
-enum { SAMPLES = 8 }; /* along each side of a block, at most */
+enum {
+    COARSE = 2,  /* places looked at along each side of a block at first */
+    SAMPLES = 8, /* and where these differ, at most */
+};
+
+/* Where the last look at a pixel row ended: blocks ascend along their row, so the next place is
+ * found a few steps on. */
+typedef struct row_cursor {
+    int32_t x, y; /* the last place; y < 0: none yet */
+    uint32_t run; /* first one of the row that ends after x */
+    uint32_t hint;
+} row_cursor;
+
+typedef struct sample {
+    uint32_t region; /* of solid */
+    int32_t owner;
+} sample;
 
 typedef struct sampling {
     const fw_sheet *sheet;
     const fw_tributary *tributary;
     const fw_cluster *cluster;
     uint32_t index; /* of the cluster */
-    place at[SAMPLES * SAMPLES];
-    int32_t owner[SAMPLES * SAMPLES];
+    row_cursor coarse[COARSE], fine[SAMPLES];
+    sample at[SAMPLES * SAMPLES];
     int32_t count;
 } sampling;
 
+/* The run that holds (x, y), or UINT32_MAX: a block may reach out of the image. */
+static uint32_t run_at(const fw_runs *set, int32_t x, int32_t y, row_cursor *last)
+{
+    if (y >= set->height)
+        return UINT32_MAX;
+    const uint32_t end = set->row[y + 1];
+    if (last->y != y || x < last->x)
+        last->run = first_after(set, x, y);
+    while (last->run < end && set->run[last->run].x1 <= x)
+        last->run++;
+    last->x = x;
+    last->y = y;
+    return last->run < end && set->run[last->run].x0 <= x ? last->run : UINT32_MAX;
+}
+
+/* Adds the place if it lies on the cluster's film. */
+static void look_at_place(sampling *now, int32_t x, int32_t y, row_cursor *cursor)
+{
+    const uint32_t run = run_at(fw_slice_solid(&now->sheet->slice), x, y, cursor);
+    if (run == UINT32_MAX)
+        return;
+    const uint32_t region = fw_slice_solid_regions(&now->sheet->slice)->label[run];
+    if (now->sheet->peel.of_region[region] != now->index)
+        return;
+    now->at[now->count++] =
+        (sample){region, fw_tributary_owner_near(now->tributary, region, x, y, &cursor->hint)};
+}
+
 /* Looks at n x n places of the block that holds the cell's centroid; those off the cluster's film
  * do not count. True when all that count have one owner. */
-static bool look_at_block(sampling *now, const fw_film_cell *cell, int32_t n)
+static bool look_at_block(sampling *now, const fw_film_cell *cell, int32_t n, row_cursor *cursors)
 {
-    const fw_runs *solid = fw_slice_solid(&now->sheet->slice);
-    const uint32_t *label = fw_slice_solid_regions(&now->sheet->slice)->label;
     const int32_t edge = now->cluster->solution->cell_px;
     const int32_t x0 = now->cluster->x0 + (int32_t)cell->x_px / edge * edge;
     const int32_t y0 = now->cluster->y0 + (int32_t)cell->y_px / edge * edge;
@@ -103,14 +159,10 @@ static bool look_at_block(sampling *now, const fw_film_cell *cell, int32_t n)
     for (int32_t i = 0; i < n * n; i++) {
         const int32_t x = x0 + (2 * (i % n) + 1) * edge / (2 * n);
         const int32_t y = y0 + (2 * (i / n) + 1) * edge / (2 * n);
-        const uint32_t run = fw_runs_find(solid, x, y);
-        if (run == UINT32_MAX || now->sheet->peel.of_region[label[run]] != now->index)
-            continue;
-        now->at[now->count] = (place){label[run], x, y};
-        now->owner[now->count] = fw_tributary_owner(now->tributary, label[run], x, y);
-        one_owner = one_owner && now->owner[now->count] == now->owner[0];
-        now->count++;
+        look_at_place(now, x, y, &cursors[i / n]);
     }
+    for (int32_t i = 1; i < now->count; i++)
+        one_owner = one_owner && now->at[i].owner == now->at[0].owner;
     return one_owner;
 }
 
@@ -120,16 +172,22 @@ static fw_status hand_out_cell(sampling *now, const fw_film_cell *cell, double f
 {
     const int32_t edge = now->cluster->solution->cell_px;
     const int32_t finest = edge < SAMPLES ? edge : SAMPLES;
-    if (edge > 1 && !look_at_block(now, cell, 2))
-        (void)look_at_block(now, cell, finest);
+    if (edge > 1 && !look_at_block(now, cell, COARSE, now->coarse))
+        (void)look_at_block(now, cell, finest, now->fine);
     if (edge == 1 || now->count == 0)
         return hand_out_at(now->sheet, now->tributary,
                            place_of_cell(now->sheet, now->cluster, now->index, cell), force_N,
                            taker, fault);
     for (int32_t i = 0; i < now->count; i++)
-        FW_TRY(hand_out_at(now->sheet, now->tributary, now->at[i], force_N / now->count, taker,
-                           fault));
+        FW_TRY(hand_to_owner(now->sheet, now->at[i].region, now->at[i].owner, force_N / now->count,
+                             taker, fault));
     return FW_OK;
+}
+
+static void forget_rows(row_cursor *cursors, int32_t count)
+{
+    for (int32_t i = 0; i < count; i++)
+        cursors[i] = (row_cursor){.y = -1};
 }
 
 static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
@@ -138,6 +196,8 @@ static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
     sampling now = {.sheet = sheet, .tributary = tributary, .cluster = cluster, .index = index};
+    forget_rows(now.coarse, COARSE);
+    forget_rows(now.fine, SAMPLES);
     for (uint32_t i = 0; i < cluster->solution->cell_count; i++) {
         const fw_film_cell *cell = &cluster->solution->cell[i];
         const double force_N = setup->q * (double)cell->u_mm2 * (double)cell->area_mm2;
@@ -156,18 +216,22 @@ void fw_load_memo_forget(fw_load_memo *memo)
 /* Sums what one cluster gives to each anchor. */
 typedef struct recorder {
     fw_load_memo *memo;
-    size_t first;
+    size_t first; /* piece of the cluster */
+    size_t last;  /* piece that was added to: neighbours mostly share an owner */
 } recorder;
 
 static fw_status record_anchor(void *context, int32_t anchor, double force_N, fw_fault *fault)
 {
-    const recorder *now = context;
+    recorder *now = context;
     fw_load_memo *memo = now->memo;
-    for (size_t i = memo->pieces; i-- > now->first;) { /* neighbours mostly share an owner */
-        if (memo->piece[i].anchor == anchor) {
-            memo->piece[i].force_N += force_N;
-            return FW_OK;
-        }
+    if (now->last == memo->pieces || memo->piece[now->last].anchor != anchor) {
+        now->last = now->first;
+        while (now->last < memo->pieces && memo->piece[now->last].anchor != anchor)
+            now->last++;
+    }
+    if (now->last < memo->pieces) {
+        memo->piece[now->last].force_N += force_N;
+        return FW_OK;
     }
     FW_TRY(fw_grow((void **)&memo->piece, &memo->piece_capacity, memo->pieces + 1,
                    sizeof *memo->piece, "loads of a batch", fault));
@@ -191,7 +255,7 @@ static fw_status recall(const fw_setup *setup, const fw_sheet *sheet, const fw_t
             (*found)->x0 == wanted.x0 && (*found)->y0 == wanted.y0)
             return FW_OK;
     }
-    recorder now = {memo, memo->pieces};
+    recorder now = {memo, memo->pieces, memo->pieces};
     const fw_load_taker taker = {record_anchor, NULL, &now};
     FW_TRY(hand_out_cells(setup, sheet, tributary, index, &taker, fault));
     FW_TRY(fw_grow((void **)&memo->entry, &memo->entry_capacity, memo->entries + 1,

@@ -493,26 +493,46 @@ fw_status fw_tributary_add_anchor(fw_tributary *field, fw_anchor_contact anchor,
     return find_sole(field, fault);
 }
 
-static node look_up(const fw_tributary *field, uint32_t region, int32_t x, int32_t y)
+static bool holds_cell(const fw_spans *spans, uint32_t span, int32_t row, uint32_t region,
+                       int32_t c)
+{
+    if (span >= spans->count)
+        return false;
+    const fw_span *at = &spans->span[span];
+    return at->row == row && at->key == region && at->c0 <= c && c < at->c1;
+}
+
+static node look_up(const fw_tributary *field, uint32_t region, int32_t x, int32_t y,
+                    uint32_t *hint)
 {
     if (field->solid == NULL || x < 0 || x >= field->width || y < 0 || y >= field->height)
         return nothing;
     const fw_spans *spans = &field->now.spans;
-    const int32_t c = x / field->cells.kx;
-    const uint32_t span = fw_spans_find(spans, y / field->cells.ky, region, c);
-    if (span == UINT32_MAX || spans->span[span].c0 > c)
+    const int32_t c = x / field->cells.kx, row = y / field->cells.ky;
+    if (!holds_cell(spans, *hint, row, region, c))
+        *hint = fw_spans_find(spans, row, region, c);
+    if (!holds_cell(spans, *hint, row, region, c))
         return nothing;
-    return field->now.node[spans->span[span].first + (uint32_t)(c - spans->span[span].c0)];
+    const fw_span *span = &spans->span[*hint];
+    return field->now.node[span->first + (uint32_t)(c - span->c0)];
+}
+
+int32_t fw_tributary_owner_near(const fw_tributary *field, uint32_t region, int32_t x, int32_t y,
+                                uint32_t *hint)
+{
+    return look_up(field, region, x, y, hint).anchor;
 }
 
 int32_t fw_tributary_owner(const fw_tributary *field, uint32_t region, int32_t x, int32_t y)
 {
-    return look_up(field, region, x, y).anchor;
+    uint32_t hint = UINT32_MAX;
+    return look_up(field, region, x, y, &hint).anchor;
 }
 
 double fw_tributary_length(const fw_tributary *field, uint32_t region, int32_t x, int32_t y)
 {
-    const node at = look_up(field, region, x, y);
+    uint32_t hint = UINT32_MAX;
+    const node at = look_up(field, region, x, y, &hint);
     return at.anchor == FW_NO_ANCHOR ? INFINITY : (double)(at.length + field->risen) * 1e-6;
 }
 

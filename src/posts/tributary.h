@@ -55,6 +55,11 @@ fw_status fw_tributary_add_anchor(fw_tributary *field, fw_anchor_contact anchor,
  * is reached yet or the region has no pixel in that cell. */
 int32_t fw_tributary_owner(const fw_tributary *field, uint32_t region, int32_t x, int32_t y);
 
+/* The same for one place after another: quick where the last one lay near. *hint is kept between
+ * the calls for one layer; any value will do at first. */
+int32_t fw_tributary_owner_near(const fw_tributary *field, uint32_t region, int32_t x, int32_t y,
+                                uint32_t *hint);
+
 /* The owner of every cell of the region, FW_NO_ANCHOR where none has one, or FW_MIXED where they
  * differ. Cheap. */
 int32_t fw_tributary_sole(const fw_tributary *field, uint32_t region);
