@@ -61,6 +61,21 @@ static fw_status allocate_planes(fw_carried *field, int32_t width, int32_t heigh
     return fw_runs_begin(&field->medium_runs, width, height, fault);
 }
 
+static fw_status open_queue(fw_carried *field, fw_fault *fault)
+{
+    fw_queue *queue = &field->queue;
+    queue->width = field->saturation;
+    for (size_t i = 0; i < field->steps.count; i++) {
+        if (field->steps.step[i].length < queue->width)
+            queue->width = field->steps.step[i].length;
+    }
+    const size_t count = field->saturation / queue->width + 1;
+    FW_TRY(fw_allocate((void **)&queue->bucket, count, sizeof *queue->bucket, FW_CARRIED_HOLDER,
+                       fault));
+    queue->count = count;
+    return FW_OK;
+}
+
 fw_status fw_carried_new(int32_t width, int32_t height, double px_mm, double py_mm,
                          double saturation_mm, fw_carried **out, fw_fault *fault)
 {
@@ -71,6 +86,8 @@ fw_status fw_carried_new(int32_t width, int32_t height, double px_mm, double py_
     field->height = height;
     choose_unit(field, px_mm, py_mm, saturation_mm);
     fw_status status = fw_steps_new(&field->steps, px_mm, py_mm, field->unit_mm, fault);
+    if (status == FW_OK)
+        status = open_queue(field, fault);
     if (status == FW_OK)
         status = allocate_planes(field, width, height, fault);
     if (status != FW_OK) {
@@ -99,7 +116,9 @@ void fw_carried_free(fw_carried *field)
     fw_bitplane_free(&field->woken);
     fw_runs_free(&field->medium_runs);
     free(field->finite);
-    free(field->heap.key);
+    for (size_t i = 0; i < field->queue.count; i++)
+        free(field->queue.bucket[i].key);
+    free(field->queue.bucket);
     free(field->pending.index);
     free(field);
 }

@@ -28,10 +28,19 @@ typedef struct fw_tile {
     uint16_t value[FW_TILE_PIXELS];
 } fw_tile;
 
-typedef struct fw_heap {
+typedef struct fw_bucket {
     uint64_t *key; /* value in units << 32 | raster index of the pixel */
     size_t count, capacity;
-} fw_heap;
+} fw_bucket;
+
+/* Pixels that wait to offer their value. A bucket is as wide as the shortest step, so what it holds
+ * cannot shorten each other and may go in any order (Denardo and Fox, Shortest-route methods 1,
+ * Oper. Res. 27 (1979) 161). */
+typedef struct fw_queue {
+    fw_bucket *bucket; /* [count], of values from i * width units on */
+    size_t count;
+    uint32_t width; /* units */
+} fw_queue;
 
 typedef struct fw_pixel_list {
     uint32_t *index; /* raster index */
@@ -58,7 +67,7 @@ struct fw_carried {
     const fw_regions *regions; /* borrowed */
     uint8_t *finite;           /* [regions->count] region belongs to the medium */
     size_t finite_capacity;
-    fw_heap heap;
+    fw_queue queue;
     fw_pixel_list pending; /* pixels that must look at their neighbours */
 };
 

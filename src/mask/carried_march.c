@@ -4,39 +4,18 @@
  *
  * before pixels wake; afterwards only a pixel near a woken one, or an unknown one near a known one,
  * can be shortened at first. Those look round once (pull); then each shortened pixel, smallest
- * value first, offers its value to its neighbours (Dijkstra). All lengths are whole units, so the
+ * values first, offers its value to its neighbours (Dijkstra). All lengths are whole units, so the
  * fixed point is one and the same whatever the order. */
 #include "fault/memory.h"
 #include "mask/carried_field.h"
 
-static fw_status heap_push(fw_heap *heap, uint32_t units, uint32_t index, fw_fault *fault)
+static fw_status push(fw_queue *queue, uint32_t units, uint32_t index, fw_fault *fault)
 {
-    FW_TRY(fw_grow((void **)&heap->key, &heap->capacity, heap->count + 1, sizeof *heap->key,
+    fw_bucket *bucket = &queue->bucket[units / queue->width];
+    FW_TRY(fw_grow((void **)&bucket->key, &bucket->capacity, bucket->count + 1, sizeof *bucket->key,
                    FW_CARRIED_HOLDER, fault));
-    const uint64_t key = (uint64_t)units << 32 | index;
-    size_t at = heap->count++;
-    while (at > 0 && heap->key[(at - 1) / 2] > key) {
-        heap->key[at] = heap->key[(at - 1) / 2];
-        at = (at - 1) / 2;
-    }
-    heap->key[at] = key;
+    bucket->key[bucket->count++] = (uint64_t)units << 32 | index;
     return FW_OK;
-}
-
-static uint64_t heap_pop(fw_heap *heap)
-{
-    const uint64_t top = heap->key[0], last = heap->key[--heap->count];
-    size_t at = 0;
-    for (size_t child = 1; child < heap->count; child = 2 * at + 1) {
-        if (child + 1 < heap->count && heap->key[child + 1] < heap->key[child])
-            child++;
-        if (last <= heap->key[child])
-            break;
-        heap->key[at] = heap->key[child];
-        at = child;
-    }
-    heap->key[at] = last;
-    return top;
 }
 
 static uint32_t raster_index(const fw_carried *field, int32_t x, int32_t y)
@@ -78,7 +57,7 @@ static bool in_sight(const fw_carried *field, const fw_step *step, int32_t x, in
 static fw_status shorten(fw_carried *field, int32_t x, int32_t y, uint32_t units, fw_fault *fault)
 {
     FW_TRY(fw_carried_store(field, x, y, units, fault));
-    return heap_push(&field->heap, units, raster_index(field, x, y), fault);
+    return push(&field->queue, units, raster_index(field, x, y), fault);
 }
 
 /* Shortens (x, y) by the best that its neighbours offer. */
@@ -116,15 +95,23 @@ static fw_status offer_round(fw_carried *field, int32_t x, int32_t y, uint32_t u
     return FW_OK;
 }
 
+static fw_status march_from(fw_carried *field, uint64_t key, fw_fault *fault)
+{
+    const uint32_t units = (uint32_t)(key >> 32), index = (uint32_t)key;
+    const int32_t x = (int32_t)(index % (uint32_t)field->width);
+    const int32_t y = (int32_t)(index / (uint32_t)field->width);
+    if (fw_carried_units(field, x, y) != units)
+        return FW_OK; /* it was shortened once more */
+    return offer_round(field, x, y, units, fault);
+}
+
 static fw_status march(fw_carried *field, fw_fault *fault)
 {
-    while (field->heap.count > 0) {
-        const uint64_t key = heap_pop(&field->heap);
-        const uint32_t units = (uint32_t)(key >> 32), index = (uint32_t)key;
-        const int32_t x = (int32_t)(index % (uint32_t)field->width);
-        const int32_t y = (int32_t)(index / (uint32_t)field->width);
-        if (fw_carried_units(field, x, y) == units) /* else it was shortened once more */
-            FW_TRY(offer_round(field, x, y, units, fault));
+    for (size_t b = 0; b < field->queue.count; b++) {
+        fw_bucket *bucket = &field->queue.bucket[b]; /* what is offered goes to later ones */
+        for (size_t i = 0; i < bucket->count; i++)
+            FW_TRY(march_from(field, bucket->key[i], fault));
+        bucket->count = 0;
     }
     return FW_OK;
 }
@@ -277,7 +264,6 @@ fw_status fw_carried_settle(fw_carried *field, fw_carried_change change, fw_faul
 {
     fw_status status = gather(field, change, fault);
     sleep_again(field);
-    field->heap.count = 0;
     for (size_t i = 0; status == FW_OK && i < field->pending.count; i++) {
         const uint32_t index = field->pending.index[i];
         status = pull(field, (int32_t)(index % (uint32_t)field->width),

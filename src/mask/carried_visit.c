@@ -32,8 +32,9 @@ size_t fw_carried_bytes(const fw_carried *field)
         bytes += field->tile[i] != NULL ? sizeof(fw_tile) : 0;
     bytes += field->medium_runs.row_capacity * sizeof(uint32_t) +
              field->medium_runs.run_capacity * sizeof(fw_run) + field->finite_capacity;
-    return bytes + field->heap.capacity * sizeof(uint64_t) +
-           field->pending.capacity * sizeof(uint32_t);
+    for (size_t i = 0; i < field->queue.count; i++)
+        bytes += sizeof(fw_bucket) + field->queue.bucket[i].capacity * sizeof(uint64_t);
+    return bytes + field->pending.capacity * sizeof(uint32_t);
 }
 
 /* A walk over the pixels above a limit; run = index of the run of the newest layer. */
