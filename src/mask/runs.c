@@ -249,47 +249,70 @@ static int32_t ellipse_half_width(double reach_x, double reach_y, int32_t dy)
     return (int32_t)floor(reach_x * sqrt(fmax(0.0, rest)) + 1e-9);
 }
 
-static int by_start(const void *left, const void *right)
-{
-    const fw_run *a = left, *b = right;
-    return (a->x0 > b->x0) - (a->x0 < b->x0);
-}
-
 typedef struct row_pool {
     fw_run *run;
     size_t count, capacity;
 } row_pool;
 
-/* Gathers what the rows within reach of y cast onto it, widened, sorted by start. */
-static fw_status gather_row(const fw_runs *a, double reach_x, double reach_y, int32_t y,
-                            row_pool *pool, fw_fault *fault)
+static void pool_push(row_pool *pool, int32_t x0, int32_t x1)
 {
-    const int32_t rows = (int32_t)floor(reach_y + 1e-9);
-    pool->count = 0;
-    for (int32_t dy = -rows; dy <= rows; dy++) {
-        const int32_t from = y + dy;
-        const int32_t half = ellipse_half_width(reach_x, reach_y, dy);
-        if (from < 0 || from >= a->height || half < 0)
-            continue;
-        for (uint32_t i = a->row[from]; i < a->row[from + 1]; i++) {
-            FW_TRY(fw_grow((void **)&pool->run, &pool->capacity, pool->count + 1, sizeof *pool->run,
-                           holder, fault));
-            pool->run[pool->count++] =
-                (fw_run){most(0, a->run[i].x0 - half), least(a->width, a->run[i].x1 + half)};
+    fw_run *last = pool->count > 0 ? &pool->run[pool->count - 1] : NULL;
+    if (last == NULL || last->x1 < x0)
+        pool->run[pool->count++] = (fw_run){x0, x1};
+    else if (last->x1 < x1)
+        last->x1 = x1;
+}
+
+/* out = what is in `pool` and one row of a, widened by half. Both ascend, so does out. */
+static fw_status cast_row(const fw_runs *a, int32_t row, int32_t half, const row_pool *pool,
+                          row_pool *out, fw_fault *fault)
+{
+    uint32_t i = a->row[row];
+    const uint32_t end = a->row[row + 1];
+    FW_TRY(fw_grow((void **)&out->run, &out->capacity, pool->count + (end - i), sizeof *out->run,
+                   holder, fault));
+    out->count = 0;
+    for (size_t j = 0; i < end || j < pool->count;) {
+        if (i < end && (j == pool->count || a->run[i].x0 - half <= pool->run[j].x0)) {
+            pool_push(out, most(0, a->run[i].x0 - half), least(a->width, a->run[i].x1 + half));
+            i++;
+        } else {
+            pool_push(out, pool->run[j].x0, pool->run[j].x1);
+            j++;
         }
     }
-    if (pool->count > 1)
-        qsort(pool->run, pool->count, sizeof *pool->run, by_start);
     return FW_OK;
 }
 
-static fw_status dilate_rows(const fw_runs *a, double reach_x, double reach_y, row_pool *pool,
+/* pool[0] = what the rows within reach of y cast onto it. Row by row, as what they cast mostly
+ * grows together: sorting all of it takes longer. */
+static fw_status gather_row(const fw_runs *a, double reach_x, double reach_y, int32_t y,
+                            row_pool pool[2], fw_fault *fault)
+{
+    const int32_t rows = (int32_t)floor(reach_y + 1e-9);
+    pool[0].count = 0;
+    for (int32_t dy = -rows; dy <= rows; dy++) {
+        const int32_t from = y + dy;
+        if (from < 0 || from >= a->height || a->row[from] == a->row[from + 1])
+            continue;
+        const int32_t half = ellipse_half_width(reach_x, reach_y, dy);
+        if (half < 0)
+            continue;
+        FW_TRY(cast_row(a, from, half, &pool[0], &pool[1], fault));
+        const row_pool cast = pool[1];
+        pool[1] = pool[0];
+        pool[0] = cast;
+    }
+    return FW_OK;
+}
+
+static fw_status dilate_rows(const fw_runs *a, double reach_x, double reach_y, row_pool pool[2],
                              fw_runs *out, fw_fault *fault)
 {
     for (int32_t y = 0; y < a->height; y++) {
         FW_TRY(gather_row(a, reach_x, reach_y, y, pool, fault));
-        for (size_t i = 0; i < pool->count; i++)
-            FW_TRY(fw_runs_push(out, y, pool->run[i].x0, pool->run[i].x1, fault));
+        for (size_t i = 0; i < pool[0].count; i++)
+            FW_TRY(fw_runs_push(out, y, pool[0].run[i].x0, pool[0].run[i].x1, fault));
     }
     return FW_OK;
 }
@@ -298,9 +321,10 @@ fw_status fw_runs_dilate(const fw_runs *a, double reach_x, double reach_y, fw_ru
                          fw_fault *fault)
 {
     FW_TRY(fw_runs_begin(out, a->width, a->height, fault));
-    row_pool pool = {0};
-    fw_status status = dilate_rows(a, reach_x, reach_y, &pool, out, fault);
-    free(pool.run);
+    row_pool pool[2] = {{0}, {0}};
+    fw_status status = dilate_rows(a, reach_x, reach_y, pool, out, fault);
+    free(pool[0].run);
+    free(pool[1].run);
     fw_runs_finish(out);
     return status;
 }
