@@ -28,10 +28,12 @@ static void unite(uint32_t *parent, uint32_t a, uint32_t b)
         parent[a] = b;
 }
 
-/* A sealed void never reaches the border, so both ends of each of its runs touch solid. */
+/* The solid region at (x, y). Both ends of a sealed run touch solid, except where a narrow vent
+ * begins: UINT32_MAX. */
 static uint32_t region_beside(const fw_slice *slice, int32_t x, int32_t y)
 {
-    return fw_slice_solid_regions(slice)->label[fw_runs_find(fw_slice_solid(slice), x, y)];
+    const uint32_t run = fw_runs_find(fw_slice_solid(slice), x, y);
+    return run != UINT32_MAX ? fw_slice_solid_regions(slice)->label[run] : UINT32_MAX;
 }
 
 typedef struct body_region {
@@ -59,29 +61,40 @@ static fw_status note(body_regions *list, uint32_t body, uint32_t region, fw_fau
     return FW_OK;
 }
 
-static fw_status bounds_of_voids(const fw_slice *slice, const uint32_t *sealed, uint32_t *of_void,
-                                 body_regions *list, fw_fault *fault)
+static fw_status note_bound(const fw_slice *slice, int32_t x, int32_t y, uint32_t body,
+                            uint32_t *of_void, body_regions *list, fw_fault *fault)
 {
-    const fw_runs *voids = &slice->voids;
+    const uint32_t region = region_beside(slice, x, y);
+    if (region == UINT32_MAX)
+        return FW_OK;
+    *of_void = region; /* its cluster follows */
+    return note(list, body, region, fault);
+}
+
+static fw_status bounds_of_voids(const fw_slice *slice, const fw_openings *openings,
+                                 uint32_t *of_void, body_regions *list, fw_fault *fault)
+{
+    const fw_runs *voids = openings->runs;
+    for (uint32_t v = 0; v < openings->regions->count; v++)
+        of_void[v] = UINT32_MAX;
     for (int32_t y = 0; y < voids->height; y++) {
         for (uint32_t i = voids->row[y]; i < voids->row[y + 1]; i++) {
-            const uint32_t v = slice->void_regions.label[i];
-            if (sealed[v] == UINT32_MAX)
+            const uint32_t v = openings->regions->label[i], body = openings->sealed[v];
+            if (body == UINT32_MAX)
                 continue;
-            of_void[v] = region_beside(slice, voids->run[i].x0 - 1, y); /* cluster follows */
-            FW_TRY(note(list, sealed[v], of_void[v], fault));
-            FW_TRY(note(list, sealed[v], region_beside(slice, voids->run[i].x1, y), fault));
+            FW_TRY(note_bound(slice, voids->run[i].x0 - 1, y, body, &of_void[v], list, fault));
+            FW_TRY(note_bound(slice, voids->run[i].x1, y, body, &of_void[v], list, fault));
         }
     }
     return FW_OK;
 }
 
 /* Regions that bound the same sealed body belong together. */
-static fw_status unite_by_cavities(const fw_slice *slice, const uint32_t *sealed, fw_peel *out,
+static fw_status unite_by_cavities(const fw_slice *slice, const fw_openings *openings, fw_peel *out,
                                    fw_fault *fault)
 {
     body_regions list = {0};
-    fw_status status = bounds_of_voids(slice, sealed, out->of_void, &list, fault);
+    fw_status status = bounds_of_voids(slice, openings, out->of_void, &list, fault);
     if (status == FW_OK && list.count > 0) {
         qsort(list.item, list.count, sizeof *list.item, by_body);
         for (size_t i = 1; i < list.count; i++) {
@@ -134,18 +147,17 @@ static fw_status number_clusters(const fw_regions *regions, const uint8_t *posts
 
 /* Numbers the cavities of each cluster in raster order of their first opening in this layer; an
  * opening below the smallest area is filled. All openings of one body share its number. */
-static fw_status number_cavities(const fw_setup *setup, const fw_slice *slice,
-                                 const uint32_t *sealed, fw_peel *out, fw_fault *fault)
+static fw_status number_cavities(const fw_setup *setup, const fw_openings *openings, fw_peel *out,
+                                 fw_fault *fault)
 {
-    const fw_regions *voids = &slice->void_regions;
+    const fw_regions *voids = openings->regions;
+    const uint32_t *sealed = openings->sealed;
     body_regions seen = {0}; /* (body, its number) of this layer */
     fw_status status = FW_OK;
     for (uint32_t v = 0; v < voids->count && status == FW_OK; v++) {
         out->cavity_of[v] = UINT32_MAX;
-        if (sealed[v] == UINT32_MAX) {
-            out->of_void[v] = UINT32_MAX;
+        if (out->of_void[v] == UINT32_MAX)
             continue;
-        }
         out->of_void[v] = out->of_region[out->of_void[v]];
         out->cluster[out->of_void[v]].sealed = true;
         const double area = (double)voids->region[v].pixels * setup->px_mm * setup->py_mm;
@@ -195,10 +207,10 @@ static void add_speeds(const fw_setup *setup, fw_peel *out)
 }
 
 fw_status fw_clusters_find(const fw_setup *setup, const fw_slice *slice, const uint8_t *posts_only,
-                           const uint32_t *sealed, fw_peel *out, fw_fault *fault)
+                           const fw_openings *openings, fw_peel *out, fw_fault *fault)
 {
     const fw_regions *regions = fw_slice_solid_regions(slice);
-    const uint32_t voids = slice->void_regions.count;
+    const uint32_t voids = openings->regions->count;
     out->count = 0;
     FW_TRY(fw_grow((void **)&out->of_region, &out->of_region_capacity, (size_t)regions->count + 1,
                    sizeof *out->of_region, holder, fault));
@@ -208,9 +220,9 @@ fw_status fw_clusters_find(const fw_setup *setup, const fw_slice *slice, const u
                    sizeof *out->cavity_of, holder, fault));
     for (uint32_t r = 0; r < regions->count; r++)
         out->of_region[r] = r;
-    FW_TRY(unite_by_cavities(slice, sealed, out, fault));
+    FW_TRY(unite_by_cavities(slice, openings, out, fault));
     FW_TRY(number_clusters(regions, posts_only, out, fault));
-    FW_TRY(number_cavities(setup, slice, sealed, out, fault));
+    FW_TRY(number_cavities(setup, openings, out, fault));
     add_row_bounds(setup, slice, out);
     add_speeds(setup, out);
     return FW_OK;
@@ -252,30 +264,31 @@ static fw_status push_sealed(fw_cluster *cluster, int32_t y, fw_run run, uint32_
     return FW_OK;
 }
 
-static fw_status push_void(const fw_slice *slice, uint32_t run, int32_t y, const uint8_t *wanted,
-                           fw_peel *out, fw_fault *fault)
+static fw_status push_void(const fw_openings *openings, uint32_t run, int32_t y,
+                           const uint8_t *wanted, fw_peel *out, fw_fault *fault)
 {
-    const uint32_t v = slice->void_regions.label[run];
+    const uint32_t v = openings->regions->label[run];
     const uint32_t cluster = out->of_void[v];
     if (cluster == UINT32_MAX || !wanted[cluster])
         return FW_OK;
     if (out->cavity_of[v] == UINT32_MAX)
-        return push_film(&out->cluster[cluster], y, slice->voids.run[run], fault);
-    return push_sealed(&out->cluster[cluster], y, slice->voids.run[run], out->cavity_of[v], fault);
+        return push_film(&out->cluster[cluster], y, openings->runs->run[run], fault);
+    return push_sealed(&out->cluster[cluster], y, openings->runs->run[run], out->cavity_of[v],
+                       fault);
 }
 
-/* Solid and void runs of a row alternate; they are handed out from left to right. */
-static fw_status push_row(const fw_slice *slice, int32_t y, const uint8_t *wanted, fw_peel *out,
-                          fw_fault *fault)
+/* Solid and void runs of a row are disjoint; they are handed out from left to right. */
+static fw_status push_row(const fw_slice *slice, const fw_openings *openings, int32_t y,
+                          const uint8_t *wanted, fw_peel *out, fw_fault *fault)
 {
-    const fw_runs *solid = fw_slice_solid(slice), *voids = &slice->voids;
+    const fw_runs *solid = fw_slice_solid(slice), *voids = openings->runs;
     const uint32_t *label = fw_slice_solid_regions(slice)->label;
     uint32_t i = solid->row[y], j = voids->row[y];
     while (i < solid->row[y + 1] || j < voids->row[y + 1]) {
         const bool take_solid = j == voids->row[y + 1] ||
                                 (i < solid->row[y + 1] && solid->run[i].x0 < voids->run[j].x0);
         if (!take_solid) {
-            FW_TRY(push_void(slice, j++, y, wanted, out, fault));
+            FW_TRY(push_void(openings, j++, y, wanted, out, fault));
             continue;
         }
         const uint32_t cluster = out->of_region[label[i]];
@@ -286,15 +299,16 @@ static fw_status push_row(const fw_slice *slice, int32_t y, const uint8_t *wante
     return FW_OK;
 }
 
-fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice, const uint8_t *wanted,
-                            fw_peel *out, fw_fault *fault)
+fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
+                            const fw_openings *openings, const uint8_t *wanted, fw_peel *out,
+                            fw_fault *fault)
 {
     for (uint32_t c = 0; c < out->count; c++) {
         if (wanted[c])
             FW_TRY(begin_shape(setup, &out->cluster[c], fault));
     }
-    for (int32_t y = 0; y < slice->voids.height; y++)
-        FW_TRY(push_row(slice, y, wanted, out, fault));
+    for (int32_t y = 0; y < openings->runs->height; y++)
+        FW_TRY(push_row(slice, openings, y, wanted, out, fault));
     for (uint32_t c = 0; c < out->count; c++) {
         if (wanted[c]) {
             fw_runs_finish(&out->cluster[c].shape.film);

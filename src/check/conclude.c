@@ -67,7 +67,6 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
     not_checked(out,
                 "bending and buckling of posts, punching of the skin round a tip, necks within "
                 "the part");
-    not_checked(out, "narrow vents: any opening counts as a vent");
     not_checked(out, "undercured and bled features, and the dose of other layers");
 }
 

@@ -13,6 +13,7 @@ static const char holder[] = "bodies of the stack";
 fw_status fw_ground_open(const fw_setup *setup, fw_ground *out, fw_fault *fault)
 {
     *out = (fw_ground){.setup = setup, .last_solid = -1};
+    FW_TRY(fw_vents_open(setup, &out->vents, fault));
     if (isinf(setup->reach_mm))
         return FW_OK;
     return fw_carried_new(setup->width, setup->height, setup->px_mm, setup->py_mm,
@@ -24,6 +25,7 @@ void fw_ground_close(fw_ground *ground)
     fw_bodies_free(&ground->bodies);
     fw_bodies_free(&ground->parts);
     fw_bodies_free(&ground->voids);
+    fw_vents_close(&ground->vents);
     fw_carried_free(ground->field);
     free(ground->touches_post);
     free(ground->large);
@@ -344,7 +346,8 @@ fw_status fw_ground_step(fw_ground *ground, fw_sheet *sheet, const fw_sheet *bef
     FW_TRY(decide_onsets(ground, sheet->layer - ground->setup->job->heal_layers, findings, fault));
     FW_TRY(note_gap(ground, sheet, findings, fault));
     FW_TRY(note_border(ground->setup, sheet, findings, fault));
-    return fw_voids_step(ground, sheet, before, row, findings, fault);
+    FW_TRY(fw_voids_step(ground, sheet, before, row, findings, fault));
+    return fw_vents_step(&ground->vents, sheet, findings, fault);
 }
 
 static uint64_t root_body(void *bodies, uint64_t id)
@@ -356,6 +359,7 @@ fw_status fw_ground_finish(fw_ground *ground, fw_findings *findings, fw_fault *f
 {
     FW_TRY(decide_onsets(ground, INT32_MAX, findings, fault));
     FW_TRY(fw_voids_finish(ground, findings, fault));
+    fw_vents_finish(&ground->vents, findings);
     fw_findings_regroup(findings, FW_ONSET, root_body, &ground->bodies);
     fw_findings_regroup(findings, FW_ADRIFT, root_body, &ground->bodies);
     fw_findings_regroup(findings, FW_OVERREACH, root_body, &ground->bodies);

@@ -4,6 +4,7 @@
 #define FW_CHECK_GROUND_H
 
 #include "check/sheet.h"
+#include "check/vents.h"
 #include "mask/bodies.h"
 #include "mask/carried.h"
 
@@ -32,6 +33,7 @@ typedef struct fw_ground {
     fw_bodies bodies;      /* of intended pixels, posts included; grounded = path to the plate */
     fw_bodies parts;       /* of part pixels; grounded is not used */
     fw_bodies voids;       /* of what is not solid; grounded = open to the vat */
+    fw_vents vents;        /* too narrow ones */
     fw_carried *field;     /* debt; NULL without a resin card */
     uint8_t *touches_post; /* [voids.body] a sealed void that a post helps to seal */
     size_t touches_capacity;

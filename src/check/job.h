@@ -18,6 +18,7 @@ typedef struct fw_job {
     fw_machine machine;
     bool has_rules; /* a `posts:` section was given */
     fw_post_rules rules;
+    double vent_mm;      /* narrower openings do not vent a cavity; 0: any does */
     int32_t heal_layers; /* an onset that joins a held body this soon is a note */
     double max_peel_N;   /* 0 = no limit in the gate */
     bool refuse_assumed; /* gate: assumed card values fail */

@@ -188,7 +188,7 @@ static fw_status peel_sheet(const phase *batch, int32_t slot, fw_fault *fault)
 {
     fw_judge *judge = batch->judge;
     fw_sheet *sheet = &judge->sheet[slot];
-    return fw_peel_solve(&judge->setup, &sheet->slice, sheet->posts_only, sheet->cavity,
+    return fw_peel_solve(&judge->setup, &sheet->slice, sheet->posts_only, &sheet->openings,
                          judge->memo, &sheet->peel, fault);
 }
 

@@ -287,24 +287,54 @@ static fw_status hand_out_solved(const fw_setup *setup, const fw_sheet *sheet,
     return FW_OK;
 }
 
-/* Half of a cavity run's suction pulls at the wall on its left, half at the one on its right. */
+static place first_place(const fw_sheet *sheet, const fw_cluster *cluster)
+{
+    const fw_region *first = &fw_slice_solid_regions(&sheet->slice)->region[cluster->first_region];
+    return (place){cluster->first_region, first->first_x, first->first_y};
+}
+
+/* The solid pixels nearest to a run of void on both sides of its row; a narrow vent may lie
+ * between. UINT32_MAX: there is none on that side. */
+static void walls_beside(const fw_runs *solid, fw_run gap, int32_t y, uint32_t run[2], int32_t x[2])
+{
+    uint32_t low = solid->row[y], high = solid->row[y + 1];
+    while (low < high) {
+        const uint32_t middle = low + (high - low) / 2;
+        if (solid->run[middle].x0 < gap.x1)
+            low = middle + 1;
+        else
+            high = middle;
+    }
+    run[0] = low > solid->row[y] ? low - 1 : UINT32_MAX;
+    run[1] = low < solid->row[y + 1] ? low : UINT32_MAX;
+    x[0] = run[0] != UINT32_MAX ? solid->run[run[0]].x1 - 1 : 0;
+    x[1] = run[1] != UINT32_MAX ? solid->run[run[1]].x0 : 0;
+}
+
+/* Half of a cavity run's suction pulls at the wall on its left, half at the one on its right; all
+ * of it at the only one. A row without any wall pulls at the cluster's first pixel. */
 static fw_status hand_out_cavity_run(const fw_setup *setup, const fw_sheet *sheet,
                                      const fw_tributary *tributary, int32_t y, uint32_t run,
                                      const fw_load_taker *taker, fw_fault *fault)
 {
-    const uint32_t v = sheet->slice.void_regions.label[run];
-    const uint32_t index = sheet->peel.of_void[v];
+    const fw_openings *openings = &sheet->openings;
+    const uint32_t v = openings->regions->label[run], index = sheet->peel.of_void[v];
     if (index == UINT32_MAX || sheet->peel.cavity_of[v] == UINT32_MAX)
         return FW_OK;
     const fw_cluster *cluster = &sheet->peel.cluster[index];
-    const fw_run r = sheet->slice.voids.run[run];
-    const fw_runs *solid = fw_slice_solid(&sheet->slice);
+    const fw_run r = openings->runs->run[run];
     const double force_N = setup->q * cluster->solution->cavity_u_mm2[sheet->peel.cavity_of[v]] *
                            (r.x1 - r.x0) * setup->px_mm * setup->py_mm;
-    const int32_t beside[2] = {r.x0 - 1, r.x1};
+    uint32_t wall[2];
+    int32_t x[2];
+    walls_beside(fw_slice_solid(&sheet->slice), r, y, wall, x);
+    const int walls = (wall[0] != UINT32_MAX) + (wall[1] != UINT32_MAX);
+    if (walls == 0)
+        return hand_out_at(sheet, tributary, first_place(sheet, cluster), force_N, taker, fault);
     for (int side = 0; side < 2; side++) {
-        const place at = place_of_run(sheet, fw_runs_find(solid, beside[side], y), beside[side], y);
-        FW_TRY(hand_out_at(sheet, tributary, at, force_N / 2, taker, fault));
+        if (wall[side] != UINT32_MAX)
+            FW_TRY(hand_out_at(sheet, tributary, place_of_run(sheet, wall[side], x[side], y),
+                               force_N / walls, taker, fault));
     }
     return FW_OK;
 }
@@ -313,7 +343,7 @@ static fw_status hand_out_cavities(const fw_setup *setup, const fw_sheet *sheet,
                                    const fw_tributary *tributary, const fw_load_taker *taker,
                                    fw_fault *fault)
 {
-    const fw_runs *voids = &sheet->slice.voids;
+    const fw_runs *voids = sheet->openings.runs;
     for (int32_t y = 0; y < voids->height; y++) {
         for (uint32_t i = voids->row[y]; i < voids->row[y + 1]; i++)
             FW_TRY(hand_out_cavity_run(setup, sheet, tributary, y, i, taker, fault));
@@ -336,11 +366,9 @@ fw_status fw_loads_hand_out(const fw_setup *setup, const fw_sheet *sheet,
 {
     for (uint32_t c = 0; c < sheet->peel.count; c++) {
         const fw_cluster *cluster = &sheet->peel.cluster[c];
-        const fw_region *first =
-            &fw_slice_solid_regions(&sheet->slice)->region[cluster->first_region];
-        const place whole = {cluster->first_region, first->first_x, first->first_y};
         if (cluster->solution == NULL)
-            FW_TRY(hand_out_at(sheet, tributary, whole, cluster->force_N, taker, fault));
+            FW_TRY(hand_out_at(sheet, tributary, first_place(sheet, cluster), cluster->force_N,
+                               taker, fault));
         else
             FW_TRY(hand_out_solved(setup, sheet, tributary, c, memo, taker, fault));
     }

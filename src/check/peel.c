@@ -174,8 +174,9 @@ fw_status fw_peel_range(const fw_setup *setup, fw_film_memo *memo, fw_peel *peel
 
 /* ---- the layer ---------------------------------------------------------------------------- */
 
-static fw_status solve_all(const fw_setup *setup, const fw_slice *slice, uint8_t *wanted,
-                           fw_film_memo *memo, fw_peel *out, fw_fault *fault)
+static fw_status solve_all(const fw_setup *setup, const fw_slice *slice,
+                           const fw_openings *openings, uint8_t *wanted, fw_film_memo *memo,
+                           fw_peel *out, fw_fault *fault)
 {
     bool any = false;
     for (uint32_t c = 0; c < out->count; c++) {
@@ -183,7 +184,7 @@ static fw_status solve_all(const fw_setup *setup, const fw_slice *slice, uint8_t
         any = any || wanted[c];
     }
     if (any)
-        FW_TRY(fw_clusters_shape(setup, slice, wanted, out, fault));
+        FW_TRY(fw_clusters_shape(setup, slice, openings, wanted, out, fault));
     for (uint32_t c = 0; c < out->count; c++) {
         if (wanted[c])
             FW_TRY(solve_cluster(setup, memo, &out->cluster[c], fault));
@@ -194,13 +195,14 @@ static fw_status solve_all(const fw_setup *setup, const fw_slice *slice, uint8_t
 }
 
 fw_status fw_peel_solve(const fw_setup *setup, const fw_slice *slice, const uint8_t *posts_only,
-                        const uint32_t *sealed, fw_film_memo *memo, fw_peel *out, fw_fault *fault)
+                        const fw_openings *openings, fw_film_memo *memo, fw_peel *out,
+                        fw_fault *fault)
 {
     uint8_t *wanted = NULL;
     free_shapes(out); /* of the layer that used this slot before */
-    FW_TRY(fw_clusters_find(setup, slice, posts_only, sealed, out, fault));
+    FW_TRY(fw_clusters_find(setup, slice, posts_only, openings, out, fault));
     FW_TRY(fw_allocate((void **)&wanted, out->count, sizeof *wanted, "peel clusters", fault));
-    const fw_status status = solve_all(setup, slice, wanted, memo, out, fault);
+    const fw_status status = solve_all(setup, slice, openings, wanted, memo, out, fault);
     free(wanted);
     sum_up(out);
     return status;

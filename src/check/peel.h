@@ -12,6 +12,14 @@
 #include "mask/slice.h"
 #include "physics/film_memo.h"
 
+/* Voids of a layer by region, and the sealed body that each belongs to. Pixels that are neither
+ * solid nor in `runs` are open to the vat. Borrowed. */
+typedef struct fw_openings {
+    const fw_runs *runs;
+    const fw_regions *regions; /* of runs */
+    const uint32_t *sealed;    /* [regions] body; UINT32_MAX = open */
+} fw_openings;
+
 typedef struct fw_cluster {
     int32_t x0, y0, x1, y1;           /* px, box */
     double area_mm2;                  /* of its solid pixels, sealed voids not counted */
@@ -33,9 +41,9 @@ typedef struct fw_peel {
     uint32_t count;
     size_t capacity;
     uint32_t *of_region; /* [solid regions] cluster */
-    uint32_t *of_void;   /* [void regions] cluster, or UINT32_MAX where the void is open */
-    uint32_t
-        *cavity_of; /* [void regions] number of its cavity within its cluster; UINT32_MAX: filled */
+    uint32_t *of_void;   /* [regions of the openings] cluster, or UINT32_MAX where it is open */
+    uint32_t *cavity_of; /* [regions of the openings] number of its cavity within its cluster;
+                            UINT32_MAX: filled */
     size_t of_region_capacity, of_void_capacity, cavity_of_capacity;
     double force_N, range_N[2];
     fw_limit limited_by;
@@ -44,11 +52,11 @@ typedef struct fw_peel {
 
 /* Finds the clusters of a layer, solves them through the memo at the card's gap, and sums their
  * forces. range_N is not filled: see fw_peel_range. posts_only [solid regions]: regions without
- * part pixels. sealed [void regions]: id of the sealed void body that a void region belongs to,
- * UINT32_MAX = open. The solutions stay valid until the memo is trimmed. Thread-safe for different
+ * part pixels. The solutions stay valid until the memo is trimmed. Thread-safe for different
  * out. */
 fw_status fw_peel_solve(const fw_setup *setup, const fw_slice *slice, const uint8_t *posts_only,
-                        const uint32_t *sealed, fw_film_memo *memo, fw_peel *out, fw_fault *fault);
+                        const fw_openings *openings, fw_film_memo *memo, fw_peel *out,
+                        fw_fault *fault);
 
 /* The most that the layer can pull at both ends of the gap range, without another solve. */
 void fw_peel_range_bound(const fw_setup *setup, const fw_peel *peel, double bound_N[2]);

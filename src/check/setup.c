@@ -67,9 +67,12 @@ fw_setup fw_setup_make(const fw_job *job, int32_t width, int32_t height, int32_t
                       .t_mm = job->layer_um / 1000,
                       .intended_least = fw_cure_intended_least(job->intent_level, full),
                       .reach_mm = INFINITY,
+                      .vent_mm = job->vent_mm,
                       .smallest_tip_mm = job->has_rules ? job->rules.tip_mm[0] : 0,
                       .loads = job->has_resin && job->has_machine};
     setup.solid_least = setup.intended_least;
+    setup.vent_px[0] = job->vent_mm / 2 / setup.px_mm * (1 - 1e-9);
+    setup.vent_px[1] = job->vent_mm / 2 / setup.py_mm * (1 - 1e-9);
     if (job->has_resin) {
         const double degree = acos(-1.0) / 180;
         setup.solid_least = fw_cure_solid_least(&job->resin, job->layer_um, full);

@@ -20,8 +20,10 @@ typedef struct fw_setup {
     int32_t full;          /* grey of a fully lit pixel */
     double px_mm, py_mm, t_mm;
     int32_t intended_least, solid_least; /* greys; solid == intended without a resin card */
-    double credit_mm; /* what one layer of vertical wall pays back of the debt: t / tan(theta) */
-    double reach_mm;  /* INFINITY without a resin card */
+    double credit_mm;  /* what one layer of vertical wall pays back of the debt: t / tan(theta) */
+    double reach_mm;   /* INFINITY without a resin card */
+    double vent_mm;    /* narrower openings do not vent; 0: any does */
+    double vent_px[2]; /* radius of that opening along x and y, a hair less */
     double smallest_tip_mm; /* 0 without post rules */
     bool loads;             /* both cards are there: peel loads and margins can be computed */
     fw_traction traction;   /* a measured law; then q is 1 MPa/mm2 and nothing is capped */

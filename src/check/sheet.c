@@ -48,6 +48,18 @@ static void find_posts_only(fw_sheet *sheet)
     }
 }
 
+/* Where a vent's disc fits: outside of the image is the vat. */
+static fw_status find_wide(fw_sheet *sheet, const fw_setup *setup, fw_fault *fault)
+{
+    fw_runs near_solid = {0};
+    fw_status status = fw_runs_dilate(fw_slice_solid(&sheet->slice), setup->vent_px[0],
+                                      setup->vent_px[1], &near_solid, fault);
+    if (status == FW_OK)
+        status = fw_runs_complement(&near_solid, &sheet->wide, fault);
+    fw_runs_free(&near_solid);
+    return status;
+}
+
 fw_status fw_sheet_build(fw_sheet *sheet, const fw_setup *setup, const fw_stamp_plan *plan,
                          int32_t layer, const fw_greys *greys, fw_fault *fault)
 {
@@ -59,6 +71,8 @@ fw_status fw_sheet_build(fw_sheet *sheet, const fw_setup *setup, const fw_stamp_
     sheet->pieces.count = 0;
     fw_contacts_clear(&sheet->contacts);
     FW_TRY(fw_slice_build(greys, setup->intended_least, setup->solid_least, &sheet->slice, fault));
+    if (setup->vent_mm > 0)
+        FW_TRY(find_wide(sheet, setup, fault));
     const size_t regions = sheet->slice.regions.count, voids = sheet->slice.void_regions.count;
     FW_TRY(fw_grow((void **)&sheet->held, &sheet->held_capacity, regions + 1, sizeof *sheet->held,
                    holder, fault));
@@ -133,6 +147,10 @@ void fw_sheet_free(fw_sheet *sheet)
     free(sheet->cavity);
     free(sheet->part_body);
     free(sheet->posts_only);
+    fw_runs_free(&sheet->wide);
+    fw_runs_free(&sheet->shut);
+    fw_regions_free(&sheet->shut_regions);
+    free(sheet->shut_body);
     fw_contacts_clear(&sheet->contacts);
     free(sheet->contacts.item);
     fw_peel_free(&sheet->peel);

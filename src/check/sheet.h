@@ -36,9 +36,14 @@ typedef struct fw_sheet {
     fw_overlaps void_from_before; /* of void regions */
     uint8_t *held;                /* [intended regions] path to the plate; set by ground.c */
     uint32_t *cavity;             /* [void regions] sealed body's id, or FW_OPEN; set by ground.c */
+    fw_runs wide;                 /* void pixels whose disc of the smallest vent is void */
+    fw_openings openings;         /* what sucks: of the voids, or of shut; set by vents.c */
+    fw_runs shut;                 /* sealed, or as good as sealed by a narrow vent */
+    fw_regions shut_regions;      /* 8-connected */
+    uint32_t *shut_body;          /* [shut regions] */
     uint32_t *part_body;          /* [part regions] id of the part's body; set by ground.c */
     uint8_t *posts_only;          /* [solid regions] no pixel of it belongs to the part */
-    size_t held_capacity, cavity_capacity, part_body_capacity, posts_only_capacity;
+    size_t held_capacity, cavity_capacity, part_body_capacity, posts_only_capacity, shut_capacity;
     fw_contacts contacts; /* set by share.c, or by the placing hook */
     fw_peel peel;         /* set by peel.c */
 } fw_sheet;

@@ -22,6 +22,9 @@ static const kind_row kinds[FW_KIND_COUNT] = {
                          "closed toward the plate and around, open only at the "
                          "window: it sucks while peeling; a vent near its plate end "
                          "relieves it"},
+    [FW_POOR_VENT] = {"poor-vent",
+                      "a cavity whose way to the vat is too narrow to relieve it: it sucks "
+                      "as if it were closed; widen the vent"},
     [FW_ENCLOSED_RESIN] = {"enclosed-resin", "liquid resin stays in the part: give it a drain, and "
                                              "treat what stays as uncured resin"},
     [FW_TIP_OVERLOAD] = {"tip-overload", "the contact carries more than the green strength allows: "

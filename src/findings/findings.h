@@ -12,6 +12,7 @@ typedef enum fw_kind {
     FW_OVERREACH,
     FW_GAP_LAYER,
     FW_BLIND_CAVITY,
+    FW_POOR_VENT,
     FW_ENCLOSED_RESIN,
     FW_TIP_OVERLOAD,
     FW_NECK_OVERLOAD,

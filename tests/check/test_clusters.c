@@ -28,6 +28,7 @@ typedef struct scene {
     fw_slice slice;
     uint8_t posts_only[8];
     uint32_t sealed[8];
+    fw_openings openings;
     fw_peel peel;
 } scene;
 
@@ -42,6 +43,7 @@ static void scene_set(scene *c, double pixel_um, uint32_t first, uint32_t second
     c->sealed[1] = first;
     c->sealed[2] = second;
     c->sealed[3] = third;
+    c->openings = (fw_openings){&c->slice.voids, &c->slice.void_regions, c->sealed};
     assert_int_equal(fw_slice_solid_regions(&c->slice)->count, 5);
     assert_int_equal(c->slice.void_regions.count, 4);
 }
@@ -49,7 +51,7 @@ static void scene_set(scene *c, double pixel_um, uint32_t first, uint32_t second
 static void scene_find(scene *c)
 {
     assert_int_equal(
-        fw_clusters_find(&c->setup, &c->slice, c->posts_only, c->sealed, &c->peel, NULL), FW_OK);
+        fw_clusters_find(&c->setup, &c->slice, c->posts_only, &c->openings, &c->peel, NULL), FW_OK);
 }
 
 static void scene_free(scene *c)
@@ -139,7 +141,8 @@ static void small_cavities_are_filled(void **state)
         assert_int_equal(small->cavity_count, large);
         assert_int_equal(c.peel.cavity_of[3], large ? 0 : UINT32_MAX);
         const uint8_t wanted[5] = {0, 0, 0, 0, 1};
-        assert_int_equal(fw_clusters_shape(&c.setup, &c.slice, wanted, &c.peel, NULL), FW_OK);
+        assert_int_equal(fw_clusters_shape(&c.setup, &c.slice, &c.openings, wanted, &c.peel, NULL),
+                         FW_OK);
         assert_int_equal(fw_runs_pixels(&small->shape.film), large ? 10 : 12);
         assert_int_equal(fw_runs_pixels(&small->shape.sealed), large ? 2 : 0);
         assert_int_equal(c.peel.cluster[0].shape.film.count, 0); /* was not wanted */
@@ -156,7 +159,8 @@ static void shape_is_the_picture(void **state)
     c.setup.py_mm = 0.06;
     scene_find(&c);
     const uint8_t wanted[3] = {1, 1, 1};
-    assert_int_equal(fw_clusters_shape(&c.setup, &c.slice, wanted, &c.peel, NULL), FW_OK);
+    assert_int_equal(fw_clusters_shape(&c.setup, &c.slice, &c.openings, wanted, &c.peel, NULL),
+                     FW_OK);
     const fw_film_shape *shape = &c.peel.cluster[0].shape;
     assert_int_equal(shape->film.width, 18);
     assert_int_equal(shape->film.height, 6);

@@ -46,7 +46,8 @@ static void solve(layer *l, int holes)
     l->budget = (fw_budget){.holder = "memo", .limit = 16u << 20};
     fw_fault fault = {0};
     assert_int_equal(fw_film_memo_create(&l->budget, &l->memo, NULL), FW_OK);
-    if (fw_peel_solve(&l->setup, &l->slice, l->posts_only, l->sealed, l->memo, &l->peel, &fault) !=
+    const fw_openings openings = {&l->slice.voids, voids, l->sealed};
+    if (fw_peel_solve(&l->setup, &l->slice, l->posts_only, &openings, l->memo, &l->peel, &fault) !=
         FW_OK)
         fail_msg("%s", fault.text);
 }
@@ -315,11 +316,13 @@ static void slots_forget(void **state)
     const double force = l.peel.force_N;
     const uint8_t no_posts[4] = {0};
     const uint32_t open[4] = {UINT32_MAX, UINT32_MAX, UINT32_MAX, UINT32_MAX};
+    const fw_openings none = {&other.slice.voids, &other.slice.void_regions, open};
+    const fw_openings holes = {&l.slice.voids, &l.slice.void_regions, l.sealed};
     assert_int_equal(
-        fw_peel_solve(&other.setup, &other.slice, no_posts, open, l.memo, &l.peel, NULL), FW_OK);
+        fw_peel_solve(&other.setup, &other.slice, no_posts, &none, l.memo, &l.peel, NULL), FW_OK);
     assert_true(l.peel.force_N == other.peel.force_N);
-    assert_int_equal(
-        fw_peel_solve(&l.setup, &l.slice, l.posts_only, l.sealed, l.memo, &l.peel, NULL), FW_OK);
+    assert_int_equal(fw_peel_solve(&l.setup, &l.slice, l.posts_only, &holes, l.memo, &l.peel, NULL),
+                     FW_OK);
     assert_true(l.peel.force_N == force);
     layer_free(&l);
     layer_free(&other);

@@ -67,7 +67,7 @@ static fw_sheet *bench_step(bench *b)
     fw_layer_row *row = &b->row[b->next];
     assert_int_equal(fw_ground_step(&b->ground, sheet, before, NULL, row, &b->findings, NULL),
                      FW_OK);
-    assert_int_equal(fw_peel_solve(&b->setup, &sheet->slice, sheet->posts_only, sheet->cavity,
+    assert_int_equal(fw_peel_solve(&b->setup, &sheet->slice, sheet->posts_only, &sheet->openings,
                                    b->memo, &sheet->peel, NULL),
                      FW_OK);
     fw_share_new_batch(&b->share);
