@@ -96,55 +96,75 @@ enum {
     SAMPLES = 8, /* and where these differ, at most */
 };
 
-/* Where the last look at a pixel row ended: blocks ascend along their row, so the next place is
- * found a few steps on. */
-typedef struct row_cursor {
-    int32_t x, y; /* the last place; y < 0: none yet */
-    uint32_t run; /* first one of the row that ends after x */
-    uint32_t hint;
-} row_cursor;
-
 typedef struct sample {
-    uint32_t region; /* of solid */
+    uint32_t region; /* of solid; UINT32_MAX: not on the cluster's film */
     int32_t owner;
 } sample;
+
+/* Where the last look at a pixel row ended: blocks ascend along their row, so the next place is
+ * found a few steps on, or is like the last. */
+typedef struct row_cursor {
+    int32_t x, y;  /* the last place; y < 0: none yet */
+    int32_t x1;    /* places of the row are like the last up to here */
+    uint32_t run;  /* first one of the row that ends after x */
+    uint32_t hint; /* for the owner */
+    sample found;
+} row_cursor;
 
 typedef struct sampling {
     const fw_sheet *sheet;
     const fw_tributary *tributary;
     const fw_cluster *cluster;
-    uint32_t index; /* of the cluster */
+    uint32_t index;  /* of the cluster */
+    int32_t cell_px; /* of the tributary, along a row */
     row_cursor coarse[COARSE], fine[SAMPLES];
     sample at[SAMPLES * SAMPLES];
     int32_t count;
 } sampling;
 
-/* The run that holds (x, y), or UINT32_MAX: a block may reach out of the image. */
-static uint32_t run_at(const fw_runs *set, int32_t x, int32_t y, row_cursor *last)
+static int32_t lesser(int32_t a, int32_t b)
 {
-    if (y >= set->height)
-        return UINT32_MAX;
-    const uint32_t end = set->row[y + 1];
-    if (last->y != y || x < last->x)
-        last->run = first_after(set, x, y);
-    while (last->run < end && set->run[last->run].x1 <= x)
-        last->run++;
-    last->x = x;
-    last->y = y;
-    return last->run < end && set->run[last->run].x0 <= x ? last->run : UINT32_MAX;
+    return a < b ? a : b;
 }
 
-/* Adds the place if it lies on the cluster's film. */
-static void look_at_place(sampling *now, int32_t x, int32_t y, row_cursor *cursor)
+/* Moves the cursor on to x in its row. */
+static void look_at_place(const sampling *now, int32_t x, row_cursor *cursor)
 {
-    const uint32_t run = run_at(fw_slice_solid(&now->sheet->slice), x, y, cursor);
-    if (run == UINT32_MAX)
+    const fw_runs *solid = fw_slice_solid(&now->sheet->slice);
+    const uint32_t end = solid->row[cursor->y + 1];
+    while (cursor->run < end && solid->run[cursor->run].x1 <= x)
+        cursor->run++;
+    const fw_run run = cursor->run < end ? solid->run[cursor->run] : (fw_run){INT32_MAX, INT32_MAX};
+    cursor->x = x;
+    cursor->found = (sample){UINT32_MAX, FW_NO_ANCHOR};
+    cursor->x1 = x < run.x0 ? run.x0 : run.x1;
+    if (x < run.x0)
         return;
-    const uint32_t region = fw_slice_solid_regions(&now->sheet->slice)->label[run];
+    const uint32_t region = fw_slice_solid_regions(&now->sheet->slice)->label[cursor->run];
     if (now->sheet->peel.of_region[region] != now->index)
         return;
-    now->at[now->count++] =
-        (sample){region, fw_tributary_owner_near(now->tributary, region, x, y, &cursor->hint)};
+    cursor->x1 = lesser(run.x1, (x / now->cell_px + 1) * now->cell_px);
+    cursor->found = (sample){
+        region, fw_tributary_owner_near(now->tributary, region, x, cursor->y, &cursor->hint)};
+}
+
+/* Adds n places of row y if they lie on the cluster's film; a block may reach out of the image. */
+static void look_at_row(sampling *now, int32_t block_x, int32_t y, int32_t n, row_cursor *cursor)
+{
+    const fw_runs *solid = fw_slice_solid(&now->sheet->slice);
+    const int32_t edge = now->cluster->solution->cell_px;
+    if (y >= solid->height)
+        return;
+    if (cursor->y != y || block_x < cursor->x)
+        *cursor = (row_cursor){
+            .x = -1, .y = y, .run = first_after(solid, block_x, y), .hint = cursor->hint};
+    for (int32_t i = 0; i < n; i++) {
+        const int32_t x = block_x + (2 * i + 1) * edge / (2 * n);
+        if (x >= cursor->x1)
+            look_at_place(now, x, cursor);
+        if (cursor->found.region != UINT32_MAX)
+            now->at[now->count++] = cursor->found;
+    }
 }
 
 /* Looks at n x n places of the block that holds the cell's centroid; those off the cluster's film
@@ -156,11 +176,8 @@ static bool look_at_block(sampling *now, const fw_film_cell *cell, int32_t n, ro
     const int32_t y0 = now->cluster->y0 + (int32_t)cell->y_px / edge * edge;
     bool one_owner = true;
     now->count = 0;
-    for (int32_t i = 0; i < n * n; i++) {
-        const int32_t x = x0 + (2 * (i % n) + 1) * edge / (2 * n);
-        const int32_t y = y0 + (2 * (i / n) + 1) * edge / (2 * n);
-        look_at_place(now, x, y, &cursors[i / n]);
-    }
+    for (int32_t j = 0; j < n; j++)
+        look_at_row(now, x0, y0 + (2 * j + 1) * edge / (2 * n), n, &cursors[j]);
     for (int32_t i = 1; i < now->count; i++)
         one_owner = one_owner && now->at[i].owner == now->at[0].owner;
     return one_owner;
@@ -196,6 +213,8 @@ static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
     sampling now = {.sheet = sheet, .tributary = tributary, .cluster = cluster, .index = index};
+    int32_t cell_rows;
+    fw_tributary_cell(tributary, &now.cell_px, &cell_rows);
     forget_rows(now.coarse, COARSE);
     forget_rows(now.fine, SAMPLES);
     for (uint32_t i = 0; i < cluster->solution->cell_count; i++) {
