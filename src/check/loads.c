@@ -60,15 +60,30 @@ static place place_of_cell(const fw_sheet *sheet, const fw_cluster *cluster, uin
     return (place){cluster->first_region, first->first_x, first->first_y};
 }
 
+/* The first piece of a region or of one after it: pieces are sorted by region. */
+static size_t first_piece(const fw_member_pieces *pieces, uint32_t region)
+{
+    size_t low = 0, high = pieces->count;
+    while (low < high) {
+        const size_t middle = low + (high - low) / 2;
+        if (pieces->item[middle].region < region)
+            low = middle + 1;
+        else
+            high = middle;
+    }
+    return low;
+}
+
 static fw_status hand_to_posts(const fw_sheet *sheet, uint32_t region, double force_N,
                                const fw_load_taker *taker, fw_fault *fault)
 {
     const int64_t pixels = fw_slice_solid_regions(&sheet->slice)->region[region].pixels;
-    for (size_t i = 0; i < sheet->pieces.count; i++) {
-        const fw_member_piece *piece = &sheet->pieces.item[i];
-        if (piece->region == region)
-            FW_TRY(taker->post(taker->context, piece->post,
-                               force_N * (double)piece->pixels / (double)pixels, fault));
+    const fw_member_pieces *pieces = &sheet->pieces;
+    for (size_t i = first_piece(pieces, region);
+         i < pieces->count && pieces->item[i].region == region; i++) {
+        const fw_member_piece *piece = &pieces->item[i];
+        FW_TRY(taker->post(taker->context, piece->post,
+                           force_N * (double)piece->pixels / (double)pixels, fault));
     }
     return FW_OK;
 }
