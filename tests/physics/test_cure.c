@@ -1,4 +1,5 @@
-/* Working curve, solid and intended greys, print-through. */
+/* Working curve and its fit, grey response, solid and intended greys, print-through, dose over
+ * layers, green strength. */
 #include "physics/cure.h"
 
 #include <math.h>
@@ -143,6 +144,185 @@ static void test_intended_least_is_exact(void **state)
     assert_int_equal(fw_cure_intended_least(0.5, 65535), 32768);
 }
 
+/* Response to the bit where there is none, and between the points of one. */
+static void test_response(void **state)
+{
+    (void)state;
+    const fw_points none = {0}, bent = {4, {{0, 0}, {0.25, 0}, {0.5, 0.4}, {1, 1}}};
+    for (int grey = 0; grey <= 255; grey++) {
+        assert_true(fw_cure_response(NULL, grey / 255.0) == grey / 255.0);
+        assert_true(fw_cure_response(&none, grey / 255.0) == grey / 255.0);
+    }
+    for (int i = 0; i < bent.count; i++)
+        assert_true(fw_cure_response(&bent, bent.at[i][0]) == bent.at[i][1]);
+    assert_true(fw_cure_response(&bent, 0.125) == 0);
+    assert_relative(fw_cure_response(&bent, 0.375), 0.2, 1e-14);
+    assert_relative(fw_cure_response(&bent, 0.75), 0.7, 1e-14);
+    for (int i = 1; i <= 4096; i++)
+        assert_true(fw_cure_response(&bent, i / 4096.0) >=
+                    fw_cure_response(&bent, (i - 1) / 4096.0));
+}
+
+static void test_what_is_a_response(void **state)
+{
+    (void)state;
+    const fw_points good[] = {{2, {{0, 0}, {1, 1}}},
+                              {3, {{0, 0}, {0.5, 0.5}, {1, 1}}},
+                              {4, {{0, 0}, {0.3, 0.2}, {0.6, 0.2}, {1, 1}}}};
+    const fw_points bad[] = {{0},
+                             {1, {{0, 0}}},
+                             {FW_CARD_POINTS + 1, {{0, 0}, {1, 1}}},
+                             {2, {{0, 0.1}, {1, 1}}},
+                             {2, {{0.1, 0}, {1, 1}}},
+                             {2, {{0, 0}, {1, 0.9}}},
+                             {2, {{0, 0}, {0.9, 1}}},
+                             {3, {{0, 0}, {0, 0.5}, {1, 1}}},
+                             {3, {{0, 0}, {(double)NAN, 0.5}, {1, 1}}},
+                             {3, {{0, 0}, {0.5, (double)NAN}, {1, 1}}},
+                             {4, {{0, 0}, {0.3, 0.4}, {0.6, 0.3}, {1, 1}}}};
+    for (size_t i = 0; i < sizeof good / sizeof *good; i++)
+        assert_true(fw_cure_is_response(&good[i]));
+    for (size_t i = 0; i < sizeof bad / sizeof *bad; i++)
+        assert_false(fw_cure_is_response(&bad[i]));
+}
+
+/* Against every grey in turn, with a response that has a flat part and starts late. */
+static void test_solid_least_of_a_response(void **state)
+{
+    (void)state;
+    const fw_points bent = {5, {{0, 0}, {0.2, 0}, {0.4, 0.45}, {0.6, 0.45}, {1, 1}}};
+    const int32_t fulls[] = {1, 3, 15, 255, 65535};
+    for (int i = 0; i < 5; i++) {
+        for (double layer_um = 10.0; layer_um < 160.0; layer_um += 7.0) {
+            const fw_resin resin = resin_of(110.0, 9.0, 38.0, 1.1);
+            const double share = fw_cure_dose(110.0, 1.1 * 9.0, layer_um) / 38.0;
+            int32_t expected = 1;
+            while (expected <= fulls[i] &&
+                   fw_cure_response(&bent, (double)expected / fulls[i]) < share)
+                expected++;
+            if (expected > fulls[i])
+                expected = INT32_MAX;
+            assert_int_equal(fw_cure_solid_least_of(&resin, &bent, layer_um, fulls[i]), expected);
+        }
+    }
+}
+
+/* (20 mJ/cm2, 100 um) and (50, 200): Dp = 100 / ln 2.5 = 109.135667 um, Ec = 8 (derived). */
+static void test_fit_of_two_points(void **state)
+{
+    (void)state;
+    const double at[2][2] = {{20, 100}, {50, 200}}, back[2][2] = {{50, 200}, {20, 100}};
+    double dp = 0, ec = 0;
+    assert_int_equal(fw_cure_fit(at, &dp, &ec, NULL), FW_OK);
+    assert_relative(dp, 109.135667, 1e-8);
+    assert_relative(ec, 8.0, 1e-14);
+    assert_relative(fw_cure_depth_um(dp, ec, 20), 100, 1e-13);
+    assert_relative(fw_cure_depth_um(dp, ec, 50), 200, 1e-13);
+    assert_int_equal(fw_cure_fit(back, &dp, &ec, NULL), FW_OK);
+    assert_relative(dp, 109.135667, 1e-8);
+    assert_relative(ec, 8.0, 1e-13);
+}
+
+static void test_fit_refuses(void **state)
+{
+    (void)state;
+    const double bad[][2][2] = {{{20, 100}, {20, 200}},
+                                {{20, 100}, {50, 100}},
+                                {{20, 200}, {50, 100}},
+                                {{20, 100}, {20, 100}},
+                                {{0, 100}, {50, 200}},
+                                {{-20, 100}, {-50, 200}},
+                                {{20, 0}, {50, 200}},
+                                {{20, (double)NAN}, {50, 200}},
+                                {{20, 100}, {(double)INFINITY, 200}}};
+    for (size_t i = 0; i < sizeof bad / sizeof *bad; i++) {
+        double dp = -1, ec = -1;
+        fw_fault fault = {0};
+        assert_int_equal(fw_cure_fit(bad[i], &dp, &ec, &fault), FW_INPUT);
+        assert_true(dp == -1 && ec == -1 && fault.text[0] != 0);
+    }
+}
+
+/* Dp 150, Ec 8, E0 40, t 50 (geometric series, derived). */
+static void test_dose_after_layers(void **state)
+{
+    (void)state;
+    const fw_resin resin = resin_of(150, 8, 40, 1);
+    const double layers[] = {1, 2, 3, 5, 10, (double)INFINITY};
+    const double near[] = {40, 68.66125, 89.19794, 114.45700, 136.07514, 141.10906};
+    const double far[] = {28.66125, 49.19794, 63.91311, 82.01202, 97.50210, 101.10906};
+    assert_relative(exp(-50.0 / 150), 0.7165313106, 1e-9);
+    assert_relative(fw_cure_dose_after(&resin, 50, 0, (double)INFINITY) / 40, 3.5277264732, 1e-10);
+    for (int i = 0; i < 6; i++) {
+        assert_relative(fw_cure_dose_after(&resin, 50, 0, layers[i]), near[i], 1e-7);
+        assert_relative(fw_cure_dose_after(&resin, 50, 50, layers[i]), far[i], 1e-7);
+    }
+    const double edge = 50 + fw_cure_print_through_um(&resin, 50);
+    assert_relative(fw_cure_dose_after(&resin, 50, edge, (double)INFINITY), 8, 1e-13);
+}
+
+/* Layer by layer in print order, backwards, and in closed form. */
+static void test_streamed_dose_of_equal_layers(void **state)
+{
+    (void)state;
+    const fw_resin resin = resin_of(150, 8, 40, 1);
+    const double through = exp(-50.0 / 150);
+    for (double depth = 0; depth < 400; depth += 37) {
+        fw_cure_column column = fw_cure_column_begin(&resin, depth);
+        double before = 0;
+        for (int n = 1; n <= 300; n++) {
+            fw_cure_column_add(&column, 1, through);
+            before = fw_cure_dose_before(&resin, before, 1, through);
+            const double expected = fw_cure_dose_after(&resin, 50, depth, n);
+            assert_relative(column.dose_mJ_cm2, expected, 1e-13);
+            assert_relative(before * exp(-depth / 150), expected, 1e-13);
+        }
+    }
+}
+
+/* Unequal shares against the sum written out: which layer weighs how much. */
+static void test_streamed_dose_of_unequal_layers(void **state)
+{
+    (void)state;
+    const fw_resin resin = resin_of(90, 8, 40, 1);
+    const double share[] = {1, 0, 0, 0.25, 0.5, 1, 0, 0.125}, depth = 30, t = 40;
+    enum { N = 8 };
+    fw_cure_column column = fw_cure_column_begin(&resin, depth);
+    double sum = 0, before = 0;
+    for (int n = 0; n < N; n++) {
+        fw_cure_column_add(&column, share[n], exp(-t / 90));
+        before = fw_cure_dose_before(&resin, before, share[N - 1 - n], exp(-t / 90));
+        sum += share[n] * 40 * exp(-(depth + n * t) / 90);
+        assert_relative(column.dose_mJ_cm2, sum, 1e-14);
+    }
+    assert_relative(before * exp(-depth / 90), sum, 1e-14);
+}
+
+/* Two points: linear in ln E between, the upper one above, down to nothing at the gel point. */
+static void test_green_follows_the_dose(void **state)
+{
+    (void)state;
+    const fw_points at = {2, {{16, 4}, {64, 12}}};
+    assert_relative(fw_cure_green(&at, 8, 16), 4, 1e-15);
+    assert_relative(fw_cure_green(&at, 8, 64), 12, 1e-15);
+    assert_relative(fw_cure_green(&at, 8, 32), 8, 1e-14);
+    assert_relative(fw_cure_green(&at, 8, 8 * sqrt(2)), 2, 1e-14);
+    assert_true(fw_cure_green(&at, 8, 65) == 12 && fw_cure_green(&at, 8, 1e9) == 12);
+    assert_true(fw_cure_green(&at, 8, 8) == 0 && fw_cure_green(&at, 8, 7) == 0);
+    assert_true(fw_cure_green(&at, 8, 0) == 0 && fw_cure_green(&at, 8, (double)NAN) == 0);
+    for (double dose = 1; dose < 100; dose *= 1.01)
+        assert_true(fw_cure_green(&at, 8, 1.01 * dose) >= fw_cure_green(&at, 8, dose));
+}
+
+static void test_green_of_one_point(void **state)
+{
+    (void)state;
+    const fw_points at = {1, {{38, 8}}};
+    const double doses[] = {1, 9, 38, 500};
+    for (int i = 0; i < 4; i++)
+        assert_true(fw_cure_green(&at, 9, doses[i]) == 8);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -156,6 +336,16 @@ int main(void)
         cmocka_unit_test(test_solid_least_is_the_smallest_that_cures),
         cmocka_unit_test(test_solid_least_by_hand),
         cmocka_unit_test(test_intended_least_is_exact),
+        cmocka_unit_test(test_response),
+        cmocka_unit_test(test_what_is_a_response),
+        cmocka_unit_test(test_solid_least_of_a_response),
+        cmocka_unit_test(test_fit_of_two_points),
+        cmocka_unit_test(test_fit_refuses),
+        cmocka_unit_test(test_dose_after_layers),
+        cmocka_unit_test(test_streamed_dose_of_equal_layers),
+        cmocka_unit_test(test_streamed_dose_of_unequal_layers),
+        cmocka_unit_test(test_green_follows_the_dose),
+        cmocka_unit_test(test_green_of_one_point),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
