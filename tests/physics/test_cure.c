@@ -207,6 +207,17 @@ static void test_solid_least_of_a_response(void **state)
     }
 }
 
+/* A grey whose share is just what is needed is solid. */
+static void test_solid_least_at_equality(void **state)
+{
+    (void)state;
+    const fw_resin resin =
+        resin_of(110.0, 9.0, 18.0, 1.0); /* no thickness: half the dose is needed */
+    const fw_points knee = {3, {{0, 0}, {1 / 3.0, 0.5}, {1, 1}}};
+    assert_int_equal(fw_cure_solid_least_of(&resin, &knee, 0, 3), 1);
+    assert_int_equal(fw_cure_solid_least_of(&resin, NULL, 0, 3), 2);
+}
+
 /* (20 mJ/cm2, 100 um) and (50, 200): Dp = 100 / ln 2.5 = 109.135667 um, Ec = 8 (derived). */
 static void test_fit_of_two_points(void **state)
 {
@@ -339,6 +350,7 @@ int main(void)
         cmocka_unit_test(test_response),
         cmocka_unit_test(test_what_is_a_response),
         cmocka_unit_test(test_solid_least_of_a_response),
+        cmocka_unit_test(test_solid_least_at_equality),
         cmocka_unit_test(test_fit_of_two_points),
         cmocka_unit_test(test_fit_refuses),
         cmocka_unit_test(test_dose_after_layers),

@@ -204,6 +204,18 @@ static void capped_disc_on_a_spring(void **state)
     }
 }
 
+/* The law itself, on a rigid machine: 101325 Pa at 100, 50 and 20 um. */
+static void capped_disc_rigid(void **state)
+{
+    (void)state;
+    const double rows[][2] = {{100, 19.1908130}, {50, 27.4642473}, {20, 30.7289757}};
+    for (int i = 0; i < 3; i++) {
+        capped_disc_law law = {10, atmosphere, 0};
+        const fw_pulloff pulloff = {{capped_disc, &law}, 500, 1, rows[i][0], 0, 0};
+        assert_close(peak_of(&pulloff).force_N, rows[i][1], 1e-8);
+    }
+}
+
 /* Uncapped: 54.612 N / 0.0801748 s / 75.5627 um and so on. */
 static void uncapped_of_the_same_rows(void **state)
 {
@@ -369,6 +381,22 @@ static void fastest(void **state)
     }
 }
 
+/* At a coarse tolerance too the limit is kept, as the same solution sees it. */
+static void fastest_keeps_the_limit(void **state)
+{
+    (void)state;
+    const double g = disc_integral(10);
+    for (double k = 1; k < 2e6; k *= 3) {
+        for (double limit = 0.01; limit < 100; limit *= 1.7) {
+            fw_pulloff pulloff = {{straight, &g}, 500, 1e4, 40, k, 1e-3};
+            double speed;
+            assert_int_equal(fw_pulloff_fastest(&pulloff, limit, &speed, NULL), FW_OK);
+            pulloff.speed_mm_s = speed;
+            assert_true(peak_of(&pulloff).force_N <= limit);
+        }
+    }
+}
+
 static void fastest_at_the_ends(void **state)
 {
     (void)state;
@@ -394,6 +422,10 @@ static void constant_force(void **state)
     assert_close(fw_pulloff_seconds(&pulloff, 20, 50, 70),
                  fw_pulloff_seconds(&pulloff, 10, 50, 70) / 2, 1e-12);
     assert_true(isinf(fw_pulloff_seconds(&pulloff, 0, 100, 200)));
+    const double small = 1e-9 * g; /* a far larger q for the same force */
+    fw_pulloff speck = pulloff;
+    speck.law.context = &small;
+    assert_close(fw_pulloff_seconds(&speck, 10, 100, 200), 0.0883573e-9, 1e-6);
     capped_disc_law law = {10, atmosphere, 0};
     fw_pulloff capped = pulloff;
     capped.law = (fw_pulloff_law){capped_disc, &law};
@@ -446,6 +478,7 @@ int main(void)
                                        cmocka_unit_test(soft_limit),
                                        cmocka_unit_test(disc_on_a_spring),
                                        cmocka_unit_test(area_exponents),
+                                       cmocka_unit_test(capped_disc_rigid),
                                        cmocka_unit_test(capped_disc_on_a_spring),
                                        cmocka_unit_test(uncapped_of_the_same_rows),
                                        cmocka_unit_test(strongly_capped),
@@ -454,6 +487,7 @@ int main(void)
                                        cmocka_unit_test(scaling),
                                        cmocka_unit_test(monotone_and_bounded),
                                        cmocka_unit_test(fastest),
+                                       cmocka_unit_test(fastest_keeps_the_limit),
                                        cmocka_unit_test(fastest_at_the_ends),
                                        cmocka_unit_test(constant_force),
                                        cmocka_unit_test(empty_and_wrong)};
