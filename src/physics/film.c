@@ -24,7 +24,9 @@ enum { CELL_BYTES = 440 };
  * that a row of blocks may hold several pieces is made up for by counting each row on its own. */
 size_t fw_film_work_bytes(const fw_film_shape *shape, const fw_film_options *options)
 {
-    const int32_t block = options->cell_px > 0 ? options->cell_px : fw_film_choose_cell(shape);
+    const int32_t block = options->cell_px > 0     ? options->cell_px
+                          : options->chosen_px > 0 ? options->chosen_px
+                                                   : fw_film_choose_cell(shape);
     double cells = shape->cavity_count;
     for (uint32_t i = 0; i < shape->film.count; i++)
         cells += ((double)(shape->film.run[i].x1 - shape->film.run[i].x0) / block + 2) / block;

@@ -54,9 +54,10 @@ typedef struct fw_film_cell {
 enum { FW_FILM_MOST_CELLS = 1 << 20 };
 
 typedef struct fw_film_options {
-    int32_t cell_px;       /* edge of the blocks, px, 1 .. 4096; 0 = fw_film_choose_cell, doubled
-                              until the film has FW_FILM_MOST_CELLS cells at most */
-    double obstacle_mm2;   /* U = P / q, > 0; INFINITY = no cap */
+    int32_t cell_px;     /* edge of the blocks, px, 1 .. 4096; 0 = fw_film_choose_cell, doubled
+                            until the film has FW_FILM_MOST_CELLS cells at most */
+    int32_t chosen_px;   /* what fw_film_choose_cell says of this shape, if it is known; 0 = not */
+    double obstacle_mm2; /* U = P / q, > 0; INFINITY = no cap */
     double work_tolerance; /* relative, of the force, 0 .. 1; 0 = 1e-3 */
 } fw_film_options;
 

@@ -255,21 +255,24 @@ static void settle(fw_film_memo *memo, entry *new, entry_state state)
     (void)pthread_mutex_unlock(&memo->lock);
 }
 
-static fw_status answer(const question *asked, entry *new, fw_fault *fault)
+static fw_status answer(const question *asked, const fw_film_options *options, entry *new,
+                        fw_fault *fault)
 {
     if (asked->kind == ANSWER_TRACTION)
         return fw_traction_solve(asked->shape, asked->traction, &new->solution, fault);
     if (asked->kind == ANSWER_CURVE)
-        return fw_film_curve_build(asked->shape, asked->options, asked->limit, NULL, &new->curve,
-                                   fault);
-    return fw_film_solve(asked->shape, asked->options, &new->solution, fault);
+        return fw_film_curve_build(asked->shape, options, asked->limit, NULL, &new->curve, fault);
+    return fw_film_solve(asked->shape, options, &new->solution, fault);
 }
 
 static fw_status compute(fw_film_memo *memo, const question *asked, entry *new, fw_fault *fault)
 {
-    const size_t bytes = fw_film_work_bytes(asked->shape, asked->options);
+    fw_film_options options = *asked->options;
+    if (options.cell_px == 0)
+        options.chosen_px = fw_film_choose_cell(asked->shape);
+    const size_t bytes = fw_film_work_bytes(asked->shape, &options);
     fw_quota_take(memo->at_once, bytes);
-    const fw_status status = answer(asked, new, fault);
+    const fw_status status = answer(asked, &options, new, fault);
     fw_quota_give(memo->at_once, bytes);
     return status;
 }

@@ -137,7 +137,7 @@ static fw_status cut_grid(const fw_film_shape *shape, const fw_film_options *opt
     bool fits = false;
     if (options->cell_px > 0)
         return fw_film_grid_build(shape, options->cell_px, UINT32_MAX, &out->grid, &fits, fault);
-    const int32_t chosen = fw_film_choose_cell(shape);
+    const int32_t chosen = options->chosen_px > 0 ? options->chosen_px : fw_film_choose_cell(shape);
     for (int32_t block = chosen; !fits; block *= 2) {
         FW_TRY(fw_film_grid_build(shape, block, FW_FILM_MOST_CELLS, &out->grid, &fits, fault));
         out->coarse = block > chosen;

@@ -91,7 +91,8 @@ static inline void shape_free(fw_film_shape *shape)
 static inline fw_film_solution solve(const fw_film_shape *shape, int cell_px, double obstacle_mm2,
                                      double tolerance)
 {
-    const fw_film_options options = {cell_px, obstacle_mm2, tolerance};
+    const fw_film_options options = {
+        .cell_px = cell_px, .obstacle_mm2 = obstacle_mm2, .work_tolerance = tolerance};
     fw_film_solution solution;
     fw_fault fault = {0};
     if (fw_film_solve(shape, &options, &solution, &fault) != FW_OK)
