@@ -55,9 +55,10 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
     if (!conclusion->setup->loads)
         not_checked(out, "margins: they need both cards");
     if (conclusion->setup->traction.law == FW_TRACTION_NONE)
-        not_checked(out,
-                    "frame compliance, and how a film or coating of the window gives: the load "
-                    "is that of a rigid machine");
+        not_checked(out, job->machine.stiffness_N_mm > 0
+                             ? "how a film or coating of the window gives: only the machine does"
+                             : "frame compliance, and how a film or coating of the window gives: "
+                               "the load is that of a rigid machine");
     else
         not_checked(out,
                     "whether the measured separation law holds here: it knows no gap, viscosity "

@@ -222,9 +222,8 @@ static void forget_rows(row_cursor *cursors, int32_t count)
         cursors[i] = (row_cursor){.y = -1};
 }
 
-static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
-                                const fw_tributary *tributary, uint32_t index,
-                                const fw_load_taker *taker, fw_fault *fault)
+static fw_status hand_out_cells(const fw_sheet *sheet, const fw_tributary *tributary,
+                                uint32_t index, const fw_load_taker *taker, fw_fault *fault)
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
     sampling now = {.sheet = sheet, .tributary = tributary, .cluster = cluster, .index = index};
@@ -234,7 +233,7 @@ static fw_status hand_out_cells(const fw_setup *setup, const fw_sheet *sheet,
     forget_rows(now.fine, SAMPLES);
     for (uint32_t i = 0; i < cluster->solution->cell_count; i++) {
         const fw_film_cell *cell = &cluster->solution->cell[i];
-        const double force_N = setup->q * (double)cell->u_mm2 * (double)cell->area_mm2;
+        const double force_N = cluster->q * (double)cell->u_mm2 * (double)cell->area_mm2;
         FW_TRY(hand_out_cell(&now, cell, force_N, taker, fault));
     }
     return FW_OK;
@@ -274,24 +273,26 @@ static fw_status record_anchor(void *context, int32_t anchor, double force_N, fw
 }
 
 /* Fills *found with the pieces of this cluster: known ones, or freshly summed. */
-static fw_status recall(const fw_setup *setup, const fw_sheet *sheet, const fw_tributary *tributary,
-                        uint32_t index, fw_load_memo *memo, const fw_load_entry **found,
-                        fw_fault *fault)
+static fw_status recall(const fw_sheet *sheet, const fw_tributary *tributary, uint32_t index,
+                        fw_load_memo *memo, const fw_load_entry **found, fw_fault *fault)
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
-    const fw_load_entry wanted = {
-        cluster->solution, cluster->x0,
-        cluster->y0,       fw_tributary_version(tributary, cluster->first_region),
-        memo->pieces,      0};
+    const fw_load_entry wanted = {cluster->solution,
+                                  cluster->q,
+                                  cluster->x0,
+                                  cluster->y0,
+                                  fw_tributary_version(tributary, cluster->first_region),
+                                  memo->pieces,
+                                  0};
     for (size_t i = memo->entries; i-- > 0;) {
         *found = &memo->entry[i];
         if ((*found)->solution == wanted.solution && (*found)->version == wanted.version &&
-            (*found)->x0 == wanted.x0 && (*found)->y0 == wanted.y0)
+            (*found)->q == wanted.q && (*found)->x0 == wanted.x0 && (*found)->y0 == wanted.y0)
             return FW_OK;
     }
     recorder now = {memo, memo->pieces, memo->pieces};
     const fw_load_taker taker = {record_anchor, NULL, &now};
-    FW_TRY(hand_out_cells(setup, sheet, tributary, index, &taker, fault));
+    FW_TRY(hand_out_cells(sheet, tributary, index, &taker, fault));
     FW_TRY(fw_grow((void **)&memo->entry, &memo->entry_capacity, memo->entries + 1,
                    sizeof *memo->entry, "loads of a batch", fault));
     memo->entry[memo->entries] = wanted;
@@ -302,18 +303,18 @@ static fw_status recall(const fw_setup *setup, const fw_sheet *sheet, const fw_t
 
 /* A part region alone gives its loads through the memo, so that the sums are formed in the same
  * order whether it is known or new. */
-static fw_status hand_out_solved(const fw_setup *setup, const fw_sheet *sheet,
-                                 const fw_tributary *tributary, uint32_t index, fw_load_memo *memo,
-                                 const fw_load_taker *taker, fw_fault *fault)
+static fw_status hand_out_solved(const fw_sheet *sheet, const fw_tributary *tributary,
+                                 uint32_t index, fw_load_memo *memo, const fw_load_taker *taker,
+                                 fw_fault *fault)
 {
     const fw_cluster *cluster = &sheet->peel.cluster[index];
     const fw_load_entry *entry = NULL;
     if (cluster->region_count > 1 || sheet->posts_only[cluster->first_region])
-        return hand_out_cells(setup, sheet, tributary, index, taker, fault);
+        return hand_out_cells(sheet, tributary, index, taker, fault);
     const int32_t sole = fw_tributary_sole(tributary, cluster->first_region);
     if (sole != FW_MIXED && cluster->cavity_count == 0)
         return taker->anchor(taker->context, sole, cluster->force_N, fault);
-    FW_TRY(recall(setup, sheet, tributary, index, memo, &entry, fault));
+    FW_TRY(recall(sheet, tributary, index, memo, &entry, fault));
     for (size_t i = 0; i < entry->count; i++) {
         const fw_load_piece *piece = &memo->piece[entry->first + i];
         FW_TRY(taker->anchor(taker->context, piece->anchor, piece->force_N, fault));
@@ -357,7 +358,7 @@ static fw_status hand_out_cavity_run(const fw_setup *setup, const fw_sheet *shee
         return FW_OK;
     const fw_cluster *cluster = &sheet->peel.cluster[index];
     const fw_run r = openings->runs->run[run];
-    const double force_N = setup->q * cluster->solution->cavity_u_mm2[sheet->peel.cavity_of[v]] *
+    const double force_N = cluster->q * cluster->solution->cavity_u_mm2[sheet->peel.cavity_of[v]] *
                            (r.x1 - r.x0) * setup->px_mm * setup->py_mm;
     uint32_t wall[2];
     int32_t x[2];
@@ -404,7 +405,7 @@ fw_status fw_loads_hand_out(const fw_setup *setup, const fw_sheet *sheet,
             FW_TRY(hand_out_at(sheet, tributary, first_place(sheet, cluster), cluster->force_N,
                                taker, fault));
         else
-            FW_TRY(hand_out_solved(setup, sheet, tributary, c, memo, taker, fault));
+            FW_TRY(hand_out_solved(sheet, tributary, c, memo, taker, fault));
     }
     return has_cavities(&sheet->peel) ? hand_out_cavities(setup, sheet, tributary, taker, fault)
                                       : FW_OK;

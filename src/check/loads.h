@@ -17,6 +17,7 @@ typedef struct fw_load_taker {
 /* What was handed out of a cluster that is likely to come again in the next layer: walls repeat. */
 typedef struct fw_load_entry {
     const fw_film_solution *solution;
+    double q; /* that scales it */
     int32_t x0, y0;
     uint64_t version;    /* of the region's owners */
     size_t first, count; /* in fw_load_memo.piece */

@@ -1,6 +1,7 @@
 #include "check/peel.h"
 
 #include "check/clusters.h"
+#include "check/frame.h"
 #include "fault/memory.h"
 
 #include <math.h>
@@ -48,6 +49,7 @@ static double bound_N(const fw_setup *setup, const fw_cluster *cluster, double q
 
 static void use_bound(const fw_setup *setup, fw_cluster *cluster)
 {
+    cluster->q = setup->q;
     cluster->force_N = bound_N(setup, cluster, setup->q);
     cluster->limited_by = FW_BY_BOUND;
 }
@@ -58,6 +60,7 @@ static fw_status follow_law(const fw_setup *setup, fw_film_memo *memo, fw_cluste
     const bool table = setup->traction.law == FW_TRACTION_TABLE;
     FW_TRY(
         fw_film_memo_traction(memo, &cluster->shape, &setup->traction, &cluster->solution, fault));
+    cluster->q = setup->q;
     cluster->force_N = cluster->solution->integral_mm4;
     cluster->limited_by = table ? FW_BY_TABLE : FW_BY_FILM;
     return FW_OK;
@@ -70,6 +73,7 @@ static fw_status solve_cluster(const fw_setup *setup, fw_film_memo *memo, fw_clu
         return follow_law(setup, memo, cluster, fault);
     const fw_film_options options = {.obstacle_mm2 = setup->cap_MPa / setup->q};
     FW_TRY(fw_film_memo_solve(memo, &cluster->shape, &options, &cluster->solution, fault));
+    cluster->q = setup->q;
     cluster->force_N = setup->q * cluster->solution->integral_mm4;
     cluster->limited_by = cluster->solution->capped ? FW_BY_CAP : FW_BY_FILM;
     return FW_OK;
@@ -114,7 +118,7 @@ static double cluster_bound(const fw_setup *setup, const fw_cluster *cluster, do
     if (is_straight(setup, solution, q))
         return q * solution->integral_mm4;
     const double full = setup->cap_MPa * solution->area_mm2;
-    const double above = q > setup->q ? cluster->force_N * q / setup->q : cluster->force_N;
+    const double above = q > cluster->q ? cluster->force_N * q / cluster->q : cluster->force_N;
     return fmin(full, above);
 }
 
@@ -161,8 +165,18 @@ static fw_status cluster_range(const fw_setup *setup, fw_film_memo *memo, fw_clu
     return FW_OK;
 }
 
+static fw_status frame_range(const fw_setup *setup, fw_film_memo *memo, fw_peel *peel,
+                             fw_fault *fault)
+{
+    for (int end = 0; end < 2; end++)
+        FW_TRY(fw_frame_range(setup, memo, peel, end, &peel->range_N[end], fault));
+    return FW_OK;
+}
+
 fw_status fw_peel_range(const fw_setup *setup, fw_film_memo *memo, fw_peel *peel, fw_fault *fault)
 {
+    if (setup->traction.law == FW_TRACTION_NONE && setup->job->machine.stiffness_N_mm > 0)
+        return frame_range(setup, memo, peel, fault);
     peel->range_N[0] = peel->range_N[1] = 0;
     for (uint32_t c = 0; c < peel->count; c++) {
         FW_TRY(cluster_range(setup, memo, &peel->cluster[c], fault));
@@ -202,8 +216,15 @@ fw_status fw_peel_solve(const fw_setup *setup, const fw_slice *slice, const uint
     free_shapes(out); /* of the layer that used this slot before */
     FW_TRY(fw_clusters_find(setup, slice, posts_only, openings, out, fault));
     FW_TRY(fw_allocate((void **)&wanted, out->count, sizeof *wanted, "peel clusters", fault));
-    const fw_status status = solve_all(setup, slice, openings, wanted, memo, out, fault);
+    fw_status status = solve_all(setup, slice, openings, wanted, memo, out, fault);
     free(wanted);
     sum_up(out);
+    out->q = setup->q;
+    out->rigid_N = out->force_N;
+    if (status == FW_OK)
+        status = fw_frame_relax(setup, memo, out, fault);
+    sum_up(out);
+    if (out->force_N < 0.99 * out->rigid_N && out->limited_by != FW_BY_CAP)
+        out->limited_by = FW_BY_FRAME;
     return status;
 }

@@ -31,6 +31,7 @@ typedef struct fw_cluster {
     uint32_t cavity_count;            /* sealed bodies in it that are large enough to be solved */
     fw_film_shape shape;              /* empty where the bound was used */
     const fw_film_solution *solution; /* NULL where the bound was used; the memo's */
+    double q;                         /* 12 eta v / h^3 at which u of the solution is meant */
     double force_N, range_N[2];       /* at the card's gap, and at both ends of its range */
     fw_limit limited_by;
 } fw_cluster;
@@ -45,6 +46,8 @@ typedef struct fw_peel {
     uint32_t *cavity_of; /* [regions of the openings] number of its cavity within its cluster;
                             UINT32_MAX: filled */
     size_t of_region_capacity, of_void_capacity, cavity_of_capacity;
+    double q;       /* of all its clusters when the layer comes off */
+    double rigid_N; /* what a rigid machine would pull */
     double force_N, range_N[2];
     fw_limit limited_by;
     int32_t coarse_px; /* cells of the coarsest film solved on coarser ones than asked; 0: none */

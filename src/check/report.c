@@ -4,7 +4,7 @@
 
 const char *fw_limit_name(fw_limit limit)
 {
-    static const char *const name[] = {"none", "film", "cap", "bound", "table"};
+    static const char *const name[] = {"none", "film", "cap", "bound", "table", "frame"};
     return name[limit];
 }
 

@@ -10,9 +10,17 @@ enum { FW_DIGEST_HEX = 65 };
 
 typedef enum fw_verdict { FW_PASS, FW_FAILED, FW_INCOMPLETE } fw_verdict;
 
-/* What set the peel load of a layer: the film, the cap, the run bound used unsolved, or a table. */
-typedef enum fw_limit { FW_BY_NOTHING, FW_BY_FILM, FW_BY_CAP, FW_BY_BOUND, FW_BY_TABLE } fw_limit;
-const char *fw_limit_name(fw_limit limit);       /* "none", "film", "cap", "bound", "table" */
+/* What set the peel load of a layer: the film, the cap, the run bound used unsolved, a table, or
+ * the machine's give. */
+typedef enum fw_limit {
+    FW_BY_NOTHING,
+    FW_BY_FILM,
+    FW_BY_CAP,
+    FW_BY_BOUND,
+    FW_BY_TABLE,
+    FW_BY_FRAME
+} fw_limit;
+const char *fw_limit_name(fw_limit limit); /* "none", "film", "cap", "bound", "table", "frame" */
 const char *fw_verdict_name(fw_verdict verdict); /* "pass", "fail", "incomplete" */
 
 typedef struct fw_layer_row {

@@ -405,6 +405,73 @@ static void measured_laws(void **state)
     }
 }
 
+/* A disc of 10 mm radius through a frame: the probe tack rows for eta 0.5 Pa s, 1 mm/s, 100 um (the
+ * equation of motion integrated by an independent method; Francis and Horn 2001 from memory), and
+ * of 50 um under its cap of 101325 Pa. The mask's own torsion stands for the disc's in the first.
+ */
+static void a_frame_gives(void **state)
+{
+    (void)state;
+    static const double stiffness[] = {10, 100, 1000, 10000},
+                        force[] = {3.43777541, 7.98267015, 14.7582174, 20.5044349};
+    layer rigid = disc(100, 100, 0);
+    solve(&rigid, OPEN_HOLES);
+    assert_true(rigid.peel.force_N == rigid.peel.rigid_N);
+    for (size_t i = 0; i < 4; i++) {
+        layer l = disc(100, 100, 0);
+        l.stage.job.machine.stiffness_N_mm = stiffness[i];
+        l.stage.job.machine.gap_range_um[0] = 80;
+        solve(&l, OPEN_HOLES);
+        assert_near(l.peel.force_N, force[i], 3e-3);
+        assert_near(l.peel.rigid_N, rigid.peel.force_N, 1e-12);
+        assert_near(l.peel.q, l.setup.q * l.peel.force_N / l.peel.rigid_N, 1e-9);
+        assert_int_equal(l.peel.limited_by, FW_BY_FRAME);
+        assert_int_equal(fw_peel_range(&l.setup, l.memo, &l.peel, NULL), FW_OK);
+        assert_near(l.peel.range_N[1], l.peel.force_N, 1e-3); /* the range ends at the card's gap */
+        assert_true(l.peel.range_N[0] > l.peel.force_N);
+        assert_true(l.peel.range_N[0] < l.peel.force_N * pow(100.0 / 80, 3));
+        layer_free(&l);
+    }
+    layer_free(&rigid);
+}
+
+static void a_frame_gives_under_the_cap(void **state)
+{
+    (void)state;
+    layer l = disc(100, 100, 0);
+    l.stage.job.machine.stiffness_N_mm = 1000;
+    l.stage.job.machine.cap_kPa = 101.325;
+    l.stage.job.machine.gap_um = l.stage.job.machine.gap_range_um[0] =
+        l.stage.job.machine.gap_range_um[1] = 50;
+    solve(&l, OPEN_HOLES);
+    assert_near(l.peel.force_N, 26.388, 0.01); /* a load curve is good to 1 % */
+    assert_int_equal(l.peel.limited_by, FW_BY_CAP);
+    assert_int_equal(fw_peel_range(&l.setup, l.memo, &l.peel, NULL), FW_OK);
+    assert_near(l.peel.range_N[0], l.peel.force_N, 0.01);
+    layer_free(&l);
+}
+
+/* A spring for all: two discs pull less than twice as much as one. */
+static void one_spring_for_the_layer(void **state)
+{
+    (void)state;
+    double force[2];
+    for (int discs = 1; discs <= 2; discs++) {
+        layer l = {.stage = stage_new(440, 220, 1)};
+        fluid(&l.stage, 100);
+        l.stage.job.machine.stiffness_N_mm = 100;
+        for (int i = 0; i < discs; i++)
+            stage_disc(&l.stage, 110 + 220 * i, 110, 100, 0, 1, 255);
+        solve(&l, OPEN_HOLES);
+        force[discs - 1] = l.peel.force_N;
+        for (uint32_t c = 0; c < l.peel.count; c++)
+            assert_near(l.peel.cluster[c].force_N, l.peel.force_N / discs, 1e-9);
+        layer_free(&l);
+    }
+    assert_true(force[1] < 1.6 * force[0]);
+    assert_true(force[1] > force[0]);
+}
+
 static void nothing_pulls_nothing(void **state)
 {
     (void)state;
@@ -431,6 +498,9 @@ int main(void)
                                        cmocka_unit_test(range_agrees_with_direct_solves),
                                        cmocka_unit_test(range_stays_under_the_cap),
                                        cmocka_unit_test(slots_forget),
+                                       cmocka_unit_test(a_frame_gives),
+                                       cmocka_unit_test(a_frame_gives_under_the_cap),
+                                       cmocka_unit_test(one_spring_for_the_layer),
                                        cmocka_unit_test(measured_laws),
                                        cmocka_unit_test(a_plate_that_tilts),
                                        cmocka_unit_test(tilt_over_the_gap_range),

@@ -241,6 +241,7 @@ static void names_and_free(void **state)
     (void)state;
     assert_string_equal(fw_limit_name(FW_BY_BOUND), "bound");
     assert_string_equal(fw_limit_name(FW_BY_TABLE), "table");
+    assert_string_equal(fw_limit_name(FW_BY_FRAME), "frame");
     assert_string_equal(fw_verdict_name(FW_PASS), "pass");
     assert_string_equal(fw_check_name(FW_CHECK_FOOT), "foot");
     fw_report report = {.layer = malloc(8), .part = malloc(8), .post_result = malloc(8)};
