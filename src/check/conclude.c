@@ -1,6 +1,7 @@
 #include "check/conclude.h"
 
 #include "check/gate.h"
+#include "check/speed.h"
 #include "fault/memory.h"
 
 #include <math.h>
@@ -196,6 +197,7 @@ fw_status fw_conclude(const fw_conclusion *conclusion, fw_report *out, fw_fault 
     FW_TRY(fw_gate_peel(conclusion, out, fault));
     FW_TRY(fw_gate_assumed(conclusion, out, fault));
     sum_tips(out);
+    FW_TRY(fw_speed_caps(conclusion, out, fault));
     FW_TRY(list_parts(conclusion, out, fault));
     fw_findings_sort(&out->findings);
     out->verdict = decide(conclusion, out);

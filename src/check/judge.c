@@ -237,6 +237,7 @@ static fw_status book_layer(fw_judge *judge, const fw_sheet *sheet, fw_fault *fa
         return FW_OK;
     fw_layer_row *row = &judge->row[sheet->layer];
     row->peel_N = sheet->peel.force_N;
+    row->peel_q = sheet->peel.q;
     row->limited_by = sheet->peel.limited_by;
     for (int end = 0; end < 2; end++)
         judge->range_N[end] = fmax(judge->range_N[end], sheet->peel.range_N[end]);

@@ -32,7 +32,9 @@ typedef struct fw_layer_row {
     double peel_N; /* NAN when there is no machine or resin card */
     double blind_cavity_mm2;
     fw_limit limited_by;
-    double worst_margin; /* over all anchors, of this layer's load; NAN where nothing is loaded */
+    double worst_margin;   /* over all anchors, of this layer's load; NAN where nothing is loaded */
+    double speed_cap_mm_s; /* fastest at which the gate holds for this layer; NAN: see speed.h */
+    double peel_q;         /* 12 eta v / h^3 as the layer comes off, MPa/mm2; in no output */
 } fw_layer_row;
 
 /* Which check of a post governs. */

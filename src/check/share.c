@@ -109,6 +109,35 @@ static fw_status take_post(void *context, int32_t post, double force_N, fw_fault
     return FW_OK;
 }
 
+/* What the layer at hand pulls on the other posts that run into this one. */
+static void add_layer_of_others(const fw_share *share, int32_t post, int32_t layer,
+                                double load_N[2])
+{
+    const fw_together *all = &share->together;
+    for (size_t i = fw_together_first(all, post); i < all->count && all->row[i].bearer == post;
+         i++) {
+        const fw_post_account *other = &share->post[all->row[i].other];
+        if (other->touched_layer != layer)
+            continue;
+        load_N[0] += all->row[i].neck * (other->tip_N + other->own_N);
+        load_N[1] += all->row[i].shaft * (other->tip_N + other->own_N);
+    }
+}
+
+static void judge_members(const fw_share *share, int32_t post, int32_t layer, fw_layer_row *row)
+{
+    const fw_post_account *account = &share->post[post];
+    const double below = account->tip_N + account->own_N;
+    double load_N[2] = {below, below};
+    add_layer_of_others(share, post, layer, load_N);
+    for (int zone = 0; zone < 2; zone++) {
+        const fw_post_check check = zone == 0 ? FW_POST_NECK : FW_POST_SHAFT;
+        row->worst_margin =
+            fmin(row->worst_margin, fw_margin_of(&share->setup->job->resin, check,
+                                                 account->section.area_mm2[check], load_N[zone]));
+    }
+}
+
 static fw_status judge_margin(fw_share *share, int32_t post, int32_t layer, fw_layer_row *rows,
                               fw_fault *fault)
 {
@@ -119,6 +148,7 @@ static fw_status judge_margin(fw_share *share, int32_t post, int32_t layer, fw_l
         rows[layer].worst_margin = fmin(
             rows[layer].worst_margin, group->area_mm2 * resin->plate_adhesion_MPa / group->layer_N);
     }
+    judge_members(share, post, layer, &rows[layer]);
     if (account->tip_N == 0)
         return FW_OK;
     if (account->contact_known) {

@@ -26,6 +26,11 @@ static size_t find(const fw_together *together, int32_t bearer, int32_t other)
     return low;
 }
 
+size_t fw_together_first(const fw_together *together, int32_t bearer)
+{
+    return find(together, bearer, INT32_MIN);
+}
+
 fw_status fw_together_note(fw_together *together, int32_t bearer, int32_t other, bool neck,
                            double part, fw_fault *fault)
 {

@@ -32,4 +32,7 @@ typedef struct fw_together {
 fw_status fw_together_note(fw_together *together, int32_t bearer, int32_t other, bool neck,
                            double part, fw_fault *fault);
 
+/* The first row of a bearer, or together->count; its rows stand together. */
+size_t fw_together_first(const fw_together *together, int32_t bearer);
+
 #endif

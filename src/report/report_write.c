@@ -94,6 +94,7 @@ static void write_layer(fw_json *json, const fw_layer_row *row)
     fw_json_digits(json, "blind_cavity_mm2", row->blind_cavity_mm2);
     fw_json_text(json, "limited_by", fw_limit_name(row->limited_by));
     fw_json_digits(json, "worst_margin", row->worst_margin);
+    fw_json_digits(json, "speed_cap_mm_s", row->speed_cap_mm_s);
     fw_json_end(json);
 }
 
