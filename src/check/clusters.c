@@ -160,6 +160,7 @@ static fw_status number_cavities(const fw_setup *setup, const fw_openings *openi
             continue;
         out->of_void[v] = out->of_region[out->of_void[v]];
         out->cluster[out->of_void[v]].sealed = true;
+        widen(&out->cluster[out->of_void[v]], &voids->region[v]); /* a poor vent leaves it open */
         const double area = (double)voids->region[v].pixels * setup->px_mm * setup->py_mm;
         if (area < FW_SMALL_CAVITY_MM2)
             continue;
@@ -299,6 +300,37 @@ static fw_status push_row(const fw_slice *slice, const fw_openings *openings, in
     return FW_OK;
 }
 
+/* Some film pixel at the end of a run, or over or under one, is neither film nor sealed. */
+static bool has_open_edge(const fw_film_shape *shape)
+{
+    const fw_runs *film = &shape->film, *sealed = &shape->sealed;
+    for (int32_t y = 0; y < film->height; y++) {
+        for (uint32_t i = film->row[y]; i < film->row[y + 1]; i++) {
+            const fw_run r = film->run[i];
+            if (fw_runs_find(sealed, r.x0 - 1, y) == UINT32_MAX ||
+                fw_runs_find(sealed, r.x1, y) == UINT32_MAX)
+                return true;
+        }
+    }
+    return false;
+}
+
+/* A film that borders on nothing but poor vents has no way to the vat, since vents are no part of
+ * the film: there they count as open after all. */
+static void open_vents(const fw_openings *openings, uint32_t index, fw_peel *out, fw_fault *fault)
+{
+    fw_cluster *cluster = &out->cluster[index];
+    const fw_runs *film = &cluster->shape.film;
+    for (uint32_t v = 0; v < openings->regions->count; v++) {
+        if (out->of_void[v] == index)
+            out->of_void[v] = out->cavity_of[v] = UINT32_MAX;
+    }
+    (void)fw_runs_begin(&cluster->shape.sealed, film->width, film->height,
+                        fault); /* has the rows */
+    fw_runs_finish(&cluster->shape.sealed);
+    cluster->shape.cavity_count = cluster->cavity_count = 0;
+}
+
 fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
                             const fw_openings *openings, const uint8_t *wanted, fw_peel *out,
                             fw_fault *fault)
@@ -313,6 +345,8 @@ fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
         if (wanted[c]) {
             fw_runs_finish(&out->cluster[c].shape.film);
             fw_runs_finish(&out->cluster[c].shape.sealed);
+            if (out->cluster[c].cavity_count > 0 && !has_open_edge(&out->cluster[c].shape))
+                open_vents(openings, c, out, fault);
         }
     }
     return FW_OK;

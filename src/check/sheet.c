@@ -48,15 +48,30 @@ static void find_posts_only(fw_sheet *sheet)
     }
 }
 
-/* Where a vent's disc fits: outside of the image is the vat. */
+/* out = solid pixels of the part. */
+static fw_status part_solid(const fw_sheet *sheet, fw_runs *out, fw_fault *fault)
+{
+    fw_runs posts = {0};
+    fw_status status = fw_members_set(&sheet->solid_members, NULL, NULL, &posts, fault);
+    if (status == FW_OK)
+        status = fw_runs_subtract(fw_slice_solid(&sheet->slice), &posts, out, fault);
+    fw_runs_free(&posts);
+    return status;
+}
+
+/* Where a vent's disc fits: outside of the image is the vat, and posts close nothing. */
 static fw_status find_wide(fw_sheet *sheet, const fw_setup *setup, fw_fault *fault)
 {
-    fw_runs near_solid = {0};
-    fw_status status = fw_runs_dilate(fw_slice_solid(&sheet->slice), setup->vent_px[0],
-                                      setup->vent_px[1], &near_solid, fault);
+    fw_runs part = {0}, near_part = {0};
+    const bool posts = sheet->solid_members.count > 0;
+    fw_status status = posts ? part_solid(sheet, &part, fault) : FW_OK;
     if (status == FW_OK)
-        status = fw_runs_complement(&near_solid, &sheet->wide, fault);
-    fw_runs_free(&near_solid);
+        status = fw_runs_dilate(posts ? &part : fw_slice_solid(&sheet->slice), setup->vent_px[0],
+                                setup->vent_px[1], &near_part, fault);
+    if (status == FW_OK)
+        status = fw_runs_complement(&near_part, &sheet->wide, fault);
+    fw_runs_free(&part);
+    fw_runs_free(&near_part);
     return status;
 }
 
@@ -71,8 +86,6 @@ fw_status fw_sheet_build(fw_sheet *sheet, const fw_setup *setup, const fw_stamp_
     sheet->pieces.count = 0;
     fw_contacts_clear(&sheet->contacts);
     FW_TRY(fw_slice_build(greys, setup->intended_least, setup->solid_least, &sheet->slice, fault));
-    if (setup->vent_mm > 0)
-        FW_TRY(find_wide(sheet, setup, fault));
     const size_t regions = sheet->slice.regions.count, voids = sheet->slice.void_regions.count;
     FW_TRY(fw_grow((void **)&sheet->held, &sheet->held_capacity, regions + 1, sizeof *sheet->held,
                    holder, fault));
@@ -84,6 +97,8 @@ fw_status fw_sheet_build(fw_sheet *sheet, const fw_setup *setup, const fw_stamp_
     const bool posts_here = plan != NULL && layer < fw_stamp_layers(plan);
     if (posts_here)
         FW_TRY(split_posts(sheet, plan, layer, fault));
+    if (setup->vent_mm > 0)
+        FW_TRY(find_wide(sheet, setup, fault));
     FW_TRY(fw_grow((void **)&sheet->part_body, &sheet->part_body_capacity,
                    (size_t)fw_sheet_part_regions(sheet)->count + 1, sizeof *sheet->part_body,
                    holder, fault));

@@ -36,7 +36,7 @@ typedef struct fw_sheet {
     fw_overlaps void_from_before; /* of void regions */
     uint8_t *held;                /* [intended regions] path to the plate; set by ground.c */
     uint32_t *cavity;             /* [void regions] sealed body's id, or FW_OPEN; set by ground.c */
-    fw_runs wide;                 /* void pixels whose disc of the smallest vent is void */
+    fw_runs wide;                 /* pixels whose disc of the smallest vent meets no part */
     fw_openings openings;         /* what sucks: of the voids, or of shut; set by vents.c */
     fw_runs shut;                 /* sealed, or as good as sealed by a narrow vent */
     fw_regions shut_regions;      /* 8-connected */

@@ -131,29 +131,20 @@ static fw_status step_centres(fw_vents *vents, const fw_sheet *sheet, fw_fault *
 
 /* ---- what is cut off by narrow vents ----------------------------------------------------- */
 
-/* The void region of a centre, which lies in the void. */
-static uint32_t void_at(const fw_sheet *sheet, int32_t x, int32_t y)
-{
-    return sheet->slice.void_regions.label[fw_runs_find(&sheet->slice.voids, x, y)];
-}
-
-static bool is_cut_off(const fw_vents *vents, const fw_sheet *sheet, uint32_t run, int32_t y)
+static bool is_cut_off(const fw_vents *vents, uint32_t run)
 {
     const uint32_t region = vents->regions[vents->newest].label[run];
-    return !fw_bodies_grounded(&vents->bodies, fw_bodies_of_region(&vents->bodies, region)) &&
-           sheet->cavity[void_at(sheet, vents->centres[vents->newest].run[run].x0, y)] == FW_OPEN;
+    return !fw_bodies_grounded(&vents->bodies, fw_bodies_of_region(&vents->bodies, region));
 }
 
-/* out = the centres of the newest layer that cannot get out, of voids that are not sealed anyway
- * (cut_off), or those that can. */
-static fw_status pick_centres(const fw_vents *vents, const fw_sheet *sheet, bool cut_off,
-                              fw_runs *out, fw_fault *fault)
+/* out = the centres of the newest layer that cannot get out (cut_off), or those that can. */
+static fw_status pick_centres(const fw_vents *vents, bool cut_off, fw_runs *out, fw_fault *fault)
 {
     const fw_runs *centres = &vents->centres[vents->newest];
     FW_TRY(fw_runs_begin(out, centres->width, centres->height, fault));
     for (int32_t y = 0; y < centres->height; y++) {
         for (uint32_t i = centres->row[y]; i < centres->row[y + 1]; i++) {
-            if (is_cut_off(vents, sheet, i, y) == cut_off)
+            if (is_cut_off(vents, i) == cut_off)
                 FW_TRY(fw_runs_push(out, y, centres->run[i].x0, centres->run[i].x1, fault));
         }
     }
@@ -161,13 +152,15 @@ static fw_status pick_centres(const fw_vents *vents, const fw_sheet *sheet, bool
     return FW_OK;
 }
 
-static fw_status pick_sealed(const fw_sheet *sheet, fw_runs *out, fw_fault *fault)
+/* out = the voids that are sealed, or those that are not. */
+static fw_status pick_voids(const fw_sheet *sheet, bool sealed, fw_runs *out, fw_fault *fault)
 {
     const fw_runs *voids = &sheet->slice.voids;
     FW_TRY(fw_runs_begin(out, voids->width, voids->height, fault));
     for (int32_t y = 0; y < voids->height; y++) {
         for (uint32_t i = voids->row[y]; i < voids->row[y + 1]; i++) {
-            if (sheet->cavity[sheet->slice.void_regions.label[i]] != FW_OPEN)
+            const bool open = sheet->cavity[sheet->slice.void_regions.label[i]] == FW_OPEN;
+            if (open != sealed)
                 FW_TRY(fw_runs_push(out, y, voids->run[i].x0, voids->run[i].x1, fault));
         }
     }
@@ -231,18 +224,24 @@ static fw_status reach(const fw_setup *setup, const fw_runs *centres, fw_runs *o
     return fw_runs_dilate(centres, setup->vent_px[0], setup->vent_px[1], out, fault);
 }
 
-/* out = `inner` and its corners. */
+/* out = `inner`, as far as it is void and not sealed anyway, and its corners. */
 static fw_status round_out(const fw_sheet *sheet, const fw_runs *inner, const fw_runs *outer,
                            fw_runs *out, fw_fault *fault)
 {
-    fw_runs both = {0}, left = {0}, corners = {0};
-    fw_status status = fw_runs_unite(inner, outer, &both, fault);
+    fw_runs open = {0}, reached = {0}, both = {0}, left = {0}, corners = {0};
+    fw_status status = pick_voids(sheet, false, &open, fault);
     if (status == FW_OK)
-        status = fw_runs_subtract(&sheet->slice.voids, &both, &left, fault);
+        status = fw_runs_intersect(inner, &open, &reached, fault);
     if (status == FW_OK)
-        status = pick_corners(&left, inner, outer, &corners, fault);
+        status = fw_runs_unite(&reached, outer, &both, fault);
     if (status == FW_OK)
-        status = fw_runs_unite(inner, &corners, out, fault);
+        status = fw_runs_subtract(&open, &both, &left, fault);
+    if (status == FW_OK)
+        status = pick_corners(&left, &reached, outer, &corners, fault);
+    if (status == FW_OK)
+        status = fw_runs_unite(&reached, &corners, out, fault);
+    fw_runs_free(&open);
+    fw_runs_free(&reached);
     fw_runs_free(&both);
     fw_runs_free(&left);
     fw_runs_free(&corners);
@@ -255,7 +254,7 @@ static fw_status find_reached(const fw_vents *vents, const fw_sheet *sheet, cons
     fw_runs free_centres = {0}, inner = {0}, outer = {0};
     fw_status status = reach(vents->setup, cut_off, &inner, fault);
     if (status == FW_OK)
-        status = pick_centres(vents, sheet, false, &free_centres, fault);
+        status = pick_centres(vents, false, &free_centres, fault);
     if (status == FW_OK)
         status = reach(vents->setup, &free_centres, &outer, fault);
     if (status == FW_OK)
@@ -274,7 +273,7 @@ static fw_status unite(const fw_vents *vents, fw_sheet *sheet, const fw_runs *cu
     fw_runs reached = {0}, sealed = {0};
     fw_status status = find_reached(vents, sheet, cut_off, &reached, fault);
     if (status == FW_OK)
-        status = pick_sealed(sheet, &sealed, fault);
+        status = pick_voids(sheet, true, &sealed, fault);
     if (status == FW_OK)
         status = fw_runs_unite(&reached, &sealed, &sheet->shut, fault);
     if (status == FW_OK)
@@ -284,12 +283,25 @@ static fw_status unite(const fw_vents *vents, fw_sheet *sheet, const fw_runs *cu
     return status;
 }
 
-static uint32_t shut_at(const fw_sheet *sheet, int32_t x, int32_t y)
+/* Gives the shut regions that a run meets a body: the smallest name wins, and a void that is sealed
+ * has a smaller one than any other. */
+static void name(fw_sheet *sheet, fw_run run, int32_t y, uint32_t body)
 {
-    return sheet->shut_regions.label[fw_runs_find(&sheet->shut, x, y)];
+    const fw_runs *shut = &sheet->shut;
+    uint32_t low = shut->row[y], high = shut->row[y + 1];
+    while (low < high) {
+        const uint32_t middle = low + (high - low) / 2;
+        if (shut->run[middle].x1 <= run.x0)
+            low = middle + 1;
+        else
+            high = middle;
+    }
+    for (; low < shut->row[y + 1] && shut->run[low].x0 < run.x1; low++) {
+        uint32_t *is = &sheet->shut_body[sheet->shut_regions.label[low]];
+        *is = body < *is ? body : *is;
+    }
 }
 
-/* Names the body of every shut region: the smallest of those in it. */
 static void name_bodies(const fw_vents *vents, fw_sheet *sheet, const fw_runs *cut_off)
 {
     const fw_runs *voids = &sheet->slice.voids, *centres = &vents->centres[vents->newest];
@@ -299,15 +311,12 @@ static void name_bodies(const fw_vents *vents, fw_sheet *sheet, const fw_runs *c
         for (uint32_t i = voids->row[y]; i < voids->row[y + 1]; i++) {
             const uint32_t body = sheet->cavity[sheet->slice.void_regions.label[i]];
             if (body != FW_OPEN)
-                sheet->shut_body[shut_at(sheet, voids->run[i].x0, y)] = body;
+                name(sheet, voids->run[i], y, body);
         }
         for (uint32_t i = cut_off->row[y]; i < cut_off->row[y + 1]; i++) {
-            const int32_t x = cut_off->run[i].x0;
-            const uint32_t region =
-                vents->regions[vents->newest].label[fw_runs_find(centres, x, y)];
-            const uint32_t body = POOR + fw_bodies_of_region(&vents->bodies, region);
-            uint32_t *name = &sheet->shut_body[shut_at(sheet, x, y)];
-            *name = body < *name ? body : *name;
+            const uint32_t run = fw_runs_find(centres, cut_off->run[i].x0, y);
+            const uint32_t region = vents->regions[vents->newest].label[run];
+            name(sheet, cut_off->run[i], y, POOR + fw_bodies_of_region(&vents->bodies, region));
         }
     }
 }
@@ -358,7 +367,7 @@ fw_status fw_vents_step(fw_vents *vents, fw_sheet *sheet, fw_findings *findings,
         return FW_OK;
     fw_runs cut_off = {0};
     FW_TRY(step_centres(vents, sheet, fault));
-    fw_status status = pick_centres(vents, sheet, true, &cut_off, fault);
+    fw_status status = pick_centres(vents, true, &cut_off, fault);
     if (status == FW_OK && cut_off.count > 0)
         status = shut(vents, sheet, &cut_off, findings, fault);
     fw_runs_free(&cut_off);

@@ -4,12 +4,13 @@
  * of 50 um relieves less than 1 % of a cavity's load, by the flow through tube and film, and it
  * cures shut).
  *
- * wide(n)    pixels of layer n whose disc of vent_mm meets no solid (outside the image is the vat)
- * centres(n) = wide(n - k + 1) .. wide(n) in common, k = vent_mm over the layer thickness, rounded
- * up Regions of centres, joined where they share a pixel with those of the layer before, are the
- * bodies that the cylinder moves in; one that touches the image border is open. Widths are right to
- * one pixel (too wide: the safe side is the other one, so choose vent_mm accordingly). In the first
- * vent_mm of a cavity no cylinder fits, and only what is fully sealed counts. */
+ * wide(n)    pixels of layer n whose disc of vent_mm meets no solid of the part (outside the image
+ * is the vat; posts close nothing: liquid passes between them) centres(n) = wide(n - k + 1) ..
+ * wide(n) in common, k = vent_mm over the layer thickness, rounded up Regions of centres, joined
+ * where they share a pixel with those of the layer before, are the bodies that the cylinder moves
+ * in; one that touches the image border is open. Widths are right to one pixel (too wide: the safe
+ * side is the other one, so choose vent_mm accordingly). In the first vent_mm of a cavity no
+ * cylinder fits, and only what is fully sealed counts. */
 #ifndef FW_CHECK_VENTS_H
 #define FW_CHECK_VENTS_H
 

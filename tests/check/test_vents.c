@@ -74,6 +74,28 @@ static void low_slots_do_not_vent(void **state)
     }
 }
 
+/* A pin within a fence of pins: the room between them is cut off by the gaps of the fence alone, so
+ * the film of the pin borders on nothing else. It is judged, and the finding stays. */
+static void a_pin_within_a_fence(void **state)
+{
+    (void)state;
+    stage s = stage_new(60, 60, 14);
+    s.job.vent_mm = 0.5;
+    s.job.max_peel_N = 1e-6;
+    stage_box(&s, 28, 28, 0, 32, 32, 14, 255);
+    for (int k = 0; k < 40; k += 5) {
+        stage_box(&s, 10 + k, 10, 0, 13 + k, 13, 14, 255);
+        stage_box(&s, 10 + k, 47, 0, 13 + k, 50, 14, 255);
+        stage_box(&s, 10, 10 + k, 0, 13, 13 + k, 14, 255);
+        stage_box(&s, 47, 10 + k, 0, 50, 13 + k, 14, 255);
+    }
+    fw_report report = stage_judge(&s);
+    assert_non_null(finding_of(&report, FW_POOR_VENT));
+    assert_true(report.layer[10].peel_N > 0);
+    fw_report_free(&report);
+    stage_free(&s);
+}
+
 /* Without a smallest vent any opening is one. */
 static void zero_means_any(void **state)
 {
@@ -190,6 +212,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(narrow_slots_do_not_vent), cmocka_unit_test(low_slots_do_not_vent),
-        cmocka_unit_test(zero_means_any), cmocka_unit_test(random_stacks_against_a_slow_cylinder)};
+        cmocka_unit_test(a_pin_within_a_fence), cmocka_unit_test(zero_means_any),
+        cmocka_unit_test(random_stacks_against_a_slow_cylinder)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
