@@ -64,11 +64,7 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out,
                     "whether the measured separation law holds here: it knows no gap, viscosity "
                     "or speed, and nothing beyond the shapes and areas that it was measured on");
-    not_checked(out,
-                "lever action on the posts: each place loads only the anchor nearest to the plate");
-    not_checked(out,
-                "bending and buckling of posts, punching of the skin round a tip, necks within "
-                "the part");
+    not_checked(out, "buckling of posts, punching of the skin round a tip, necks within the part");
     not_checked(out, "undercured and bled features, and the dose of other layers");
 }
 

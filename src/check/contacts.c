@@ -38,7 +38,11 @@ static fw_status add_plate(fw_share *share, fw_sheet *sheet, uint32_t region, co
         .x_mm = fw_setup_x(share->setup, (double)r->sum_x / pixels),
         .y_mm = fw_setup_y(share->setup, (double)r->sum_y / pixels),
         .load_layer = -1};
-    return FW_OK;
+    const fw_plate_account *made = &share->plate[share->plate_count - 1];
+    if (made->part == UINT32_MAX)
+        return FW_OK;
+    return fw_lever_add_plate(&share->lever, contact, (int32_t)share->plate_count - 1, made->part,
+                              fault);
 }
 
 static fw_status add_plates(fw_share *share, fw_sheet *sheet, fw_fault *fault)

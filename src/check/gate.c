@@ -84,7 +84,10 @@ static fw_status judge_post(const fw_conclusion *conclusion, size_t index, fw_re
     const fw_post_account *account = &conclusion->share->post[index];
     const double contact = account->section.area_mm2[FW_POST_TIP];
     fw_post_result *result = &out->post_result[index];
-    *result = (fw_post_result){.load_N = account->demand.load_N[FW_POST_TIP],
+    fw_post_demand demand;
+    fw_post_section section;
+    fw_share_judged(conclusion->share, index, &demand, &section);
+    *result = (fw_post_result){.load_N = demand.load_N[FW_POST_TIP],
                                .load_layer = account->load_layer,
                                .contact_mm2 = isfinite(contact) ? contact : 0,
                                .margin = NAN};
@@ -93,9 +96,6 @@ static fw_status judge_post(const fw_conclusion *conclusion, size_t index, fw_re
     FW_TRY(note_stub(post, account, out, fault));
     if (!setup->loads)
         return FW_OK;
-    fw_post_demand demand;
-    fw_post_section section;
-    fw_share_judged(conclusion->share, index, &demand, &section);
     const fw_post_margins margins = fw_margins_of(&setup->job->resin, &demand, &section);
     result->margin = margins.least;
     if (margins.governs < FW_POST_CHECKS)

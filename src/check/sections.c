@@ -163,6 +163,9 @@ static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t
         if (run != UINT32_MAX)
             account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
     }
+    if (status == FW_OK && account->part >= 0)
+        status = fw_lever_add_post(&share->lever, &share->posts->item[index], index,
+                                   (uint32_t)account->part, fault);
     fw_runs_free(&account->end);
     fw_runs_free(&contact);
     return status;

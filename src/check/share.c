@@ -1,6 +1,7 @@
 #include "check/share.h"
 
 #include "check/contacts.h"
+#include "check/lever_share.h"
 #include "check/sections.h"
 #include "fault/memory.h"
 
@@ -12,7 +13,7 @@ static const char holder[] = "loads on posts";
 fw_status fw_share_open(const fw_setup *setup, const fw_posts *posts, const fw_stamp_plan *plan,
                         fw_share *out, fw_fault *fault)
 {
-    *out = (fw_share){.setup = setup, .posts = posts, .plan = plan};
+    *out = (fw_share){.setup = setup, .posts = posts, .plan = plan, .lever = {.setup = setup}};
     if (!setup->loads)
         return FW_OK;
     return fw_tributary_new(setup->width, setup->height, setup->px_mm, setup->py_mm,
@@ -28,6 +29,7 @@ void fw_share_close(fw_share *share)
     free(share->plate);
     free(share->group);
     free(share->together.row);
+    fw_lever_close(&share->lever);
     free(share->touched);
     free(share->waiting);
     free(share->loads.entry);
@@ -203,16 +205,36 @@ static fw_status book_posts(fw_share *share, int32_t layer, fw_layer_row *rows, 
     return FW_OK;
 }
 
+void fw_share_demand(const fw_share *share, size_t post, fw_post_demand *demand)
+{
+    const fw_together *all = &share->together;
+    const int32_t index = (int32_t)post;
+    *demand = share->post[post].demand;
+    for (size_t i = fw_together_first(all, index); i < all->count && all->row[i].bearer == index;
+         i++) {
+        /* The foot's load is the whole load of a post. */
+        const double other_N = share->post[all->row[i].other].demand.load_N[FW_POST_FOOT];
+        demand->load_N[FW_POST_NECK] += all->row[i].neck * other_N;
+        demand->load_N[FW_POST_SHAFT] += all->row[i].shaft * other_N;
+    }
+    for (int check = 0; check < FW_POST_CHECKS; check++)
+        demand->load_N[check] = fmax(demand->load_N[check], share->post[post].lever_N[check]);
+}
+
 void fw_share_judged(const fw_share *share, size_t post, fw_post_demand *demand,
                      fw_post_section *section)
 {
     const fw_post_account *account = &share->post[post];
-    *demand = account->demand;
+    fw_share_demand(share, post, demand);
     *section = account->section;
     if (account->group < 0)
         return;
-    demand->load_N[FW_POST_FOOT] = account->group_N;
-    section->area_mm2[FW_POST_FOOT] = share->group[account->group].area_mm2;
+    /* By rigid share each foot is strained as if it stood alone. */
+    const double area = share->group[account->group].area_mm2;
+    demand->load_N[FW_POST_FOOT] =
+        fmax(account->group_N,
+             account->lever_N[FW_POST_FOOT] * area / account->section.area_mm2[FW_POST_FOOT]);
+    section->area_mm2[FW_POST_FOOT] = area;
 }
 
 static void book_plates(fw_share *share, int32_t layer, fw_layer_row *rows)
@@ -259,6 +281,7 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
                         fw_layer_row *rows, fw_fault *fault)
 {
     FW_TRY(open_accounts(share, fault));
+    FW_TRY(fw_lever_follow(&share->lever, sheet, before, fault));
     if (share->plan != NULL)
         FW_TRY(fw_sections_measure(share, sheet, rows, fault));
     if (share->tributary == NULL)
@@ -270,24 +293,11 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
     FW_TRY(fw_loads_hand_out(share->setup, sheet, share->tributary, &share->loads, &taker, fault));
     FW_TRY(book_posts(share, sheet->layer, rows, fault));
     book_plates(share, sheet->layer, rows);
-    return FW_OK;
-}
-
-/* The foot's load is the whole load of a post, and stays its own here. */
-static void add_loads_of_others(fw_share *share)
-{
-    for (size_t i = 0; i < share->together.count; i++) {
-        const fw_together_row *row = &share->together.row[i];
-        const double other_N = share->post[row->other].demand.load_N[FW_POST_FOOT];
-        double *load = share->post[row->bearer].demand.load_N;
-        load[FW_POST_NECK] += row->neck * other_N;
-        load[FW_POST_SHAFT] += row->shaft * other_N;
-    }
+    return fw_lever_share(share, sheet, &rows[sheet->layer], fault);
 }
 
 void fw_share_finish(fw_share *share, fw_layer_row *rows)
 {
-    add_loads_of_others(share);
     for (size_t p = 0; p < share->post_count; p++) {
         fw_post_account *account = &share->post[p];
         if (account->contact_known || share->plan == NULL)

@@ -3,6 +3,7 @@
 #ifndef FW_CHECK_SHARE_H
 #define FW_CHECK_SHARE_H
 
+#include "check/lever.h"
 #include "check/loads.h"
 #include "check/sheet.h"
 #include "check/together.h"
@@ -20,17 +21,18 @@ typedef struct fw_foot_group {
 
 /* What a post carried and what it is made of, so far. */
 typedef struct fw_post_account {
-    fw_post_demand demand;   /* largest so far, per check */
-    fw_post_section section; /* smallest solid areas so far; INFINITY = not seen yet */
-    int32_t load_layer;      /* of the largest tip load; -1 */
-    int32_t seen_layers;     /* layers below the tip in which it has any solid pixel */
-    bool contact_known;      /* its end in the part was measured */
-    fw_runs end;             /* solid pixels of its last section, until then; owned */
-    double tip_N, own_N;     /* of the layer at hand */
-    int32_t touched_layer;   /* layer for which the two were last cleared */
-    int32_t part;            /* part body over its tip, -1 */
-    int32_t group;           /* of its foot; -1: it has none */
-    double group_N;          /* largest load on its group so far, its own and its fellows' */
+    fw_post_demand demand;          /* largest so far, per check */
+    fw_post_section section;        /* smallest solid areas so far; INFINITY = not seen yet */
+    double lever_N[FW_POST_CHECKS]; /* largest by rigid share so far, as equal pulls */
+    int32_t load_layer;             /* of the largest tip load; -1 */
+    int32_t seen_layers;            /* layers below the tip in which it has any solid pixel */
+    bool contact_known;             /* its end in the part was measured */
+    fw_runs end;                    /* solid pixels of its last section, until then; owned */
+    double tip_N, own_N;            /* of the layer at hand */
+    int32_t touched_layer;          /* layer for which the two were last cleared */
+    int32_t part;                   /* part body over its tip, -1 */
+    int32_t group;                  /* of its foot; -1: it has none */
+    double group_N;                 /* largest load on its group so far, its own and its fellows' */
 } fw_post_account;
 
 typedef struct fw_plate_account {
@@ -60,6 +62,7 @@ typedef struct fw_share {
     fw_foot_group *group; /* [group_count] */
     size_t group_count, group_capacity;
     fw_together together; /* posts that run into one another */
+    fw_lever lever;       /* rigid shares */
     int32_t *touched;     /* posts that the layer at hand loads */
     size_t touched_count, touched_capacity;
     fw_load_memo loads; /* of the batch at hand */
@@ -83,13 +86,16 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
 /* The contact of a post is known now: gives rows the margins of the layers that waited for it. */
 void fw_share_settle(fw_share *share, int32_t post, fw_layer_row *rows);
 
-/* After the last layer: posts whose contact was never seen count as holding nothing, and necks and
- * shafts get what they carry for the posts that run into them. */
+/* After the last layer: posts whose contact was never seen count as holding nothing. */
 void fw_share_finish(fw_share *share, fw_layer_row *rows);
 void fw_share_close(fw_share *share);
 
+/* What a post has to carry by the layers so far: the larger of its tributary share, with what it
+ * carries for posts that run into it, and of its rigid share. */
+void fw_share_demand(const fw_share *share, size_t post, fw_post_demand *demand);
+
 /* Demand and section of a post as the gate judges them: its foot together with those that it has
- * grown together with. (account->demand and account->section are its own, for sizing.) */
+ * grown together with. */
 void fw_share_judged(const fw_share *share, size_t post, fw_post_demand *demand,
                      fw_post_section *section);
 

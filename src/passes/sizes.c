@@ -34,8 +34,9 @@ static fw_post_demand demand_of(const fw_sizing *sizing, size_t index)
 {
     const fw_resin *resin = &sizing->job->resin;
     const fw_share *share = fw_judge_share(sizing->judge);
-    fw_post_demand judged, own = share->post[index].demand;
+    fw_post_demand judged, own;
     fw_post_section section;
+    fw_share_demand(share, index, &own);
     fw_share_judged(share, index, &judged, &section);
     const double holds =
         fw_strength_adhesion_N(resin->plate_adhesion_MPa, section.area_mm2[FW_POST_FOOT]);

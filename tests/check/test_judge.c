@@ -193,16 +193,17 @@ static void peel_at_the_limit(void **state)
     stage_free(&s);
 }
 
-/* Plate: 16 mm2 hold adhesion x 16; the margin asked for passes, a hair less does not. */
+/* Plate: 16 mm2 hold adhesion x 16; the margin asked for passes, a little less does not. The centre
+ * of the film's field is as good as its work tolerance, so there is a trace of a lever. */
 static void plate_at_the_margin(void **state)
 {
     (void)state;
     stage s = one_block();
     const double peak = peak_of(&s);
     s.job.rules.margin = 2;
-    s.job.resin.plate_adhesion_MPa = 2 * peak / 16 * (1 + 1e-9);
+    s.job.resin.plate_adhesion_MPa = 2 * peak / 16 * (1 + 2e-3);
     assert_false(has(&s, FW_PLATE_OVERLOAD, FW_PASS));
-    s.job.resin.plate_adhesion_MPa = 2 * peak / 16 * (1 - 1e-9);
+    s.job.resin.plate_adhesion_MPa = 2 * peak / 16 * (1 - 2e-3);
     assert_true(has(&s, FW_PLATE_OVERLOAD, FW_FAILED));
     stage_free(&s);
 }
@@ -219,25 +220,29 @@ static stage on_posts(void)
 }
 
 /* The worst margin of the posts becomes the gate: passes; a hair more is asked: fails, and the
- * check that governs is named. Once with weak resin (the contact), once with weak adhesion (the
- * foot). */
+ * check that governs is named. Once with weak resin (the contact, or the neck's end at it, which
+ * has the same pixels), once with weak adhesion (the foot). */
 static void posts_at_the_margin(void **state)
 {
     (void)state;
-    static const fw_check governs[2] = {FW_CHECK_TIP, FW_CHECK_FOOT};
-    static const fw_kind kind[2] = {FW_TIP_OVERLOAD, FW_FOOT_OVERLOAD};
     for (int foot = 0; foot < 2; foot++) {
         stage s = on_posts();
         s.job.resin.tensile_MPa = foot ? 8 : 0.2;
         s.job.resin.plate_adhesion_MPa = foot ? 0.05 : 5;
         fw_report report = stage_judge(&s);
         const double worst = fmin(report.post_result[0].margin, report.post_result[1].margin);
-        assert_int_equal(report.post_result[0].governs, governs[foot]);
+        const bool first = report.post_result[0].margin <= report.post_result[1].margin;
+        const fw_check governs = report.post_result[first ? 0 : 1].governs;
+        const fw_kind kind = foot                      ? FW_FOOT_OVERLOAD
+                             : governs == FW_CHECK_TIP ? FW_TIP_OVERLOAD
+                                                       : FW_NECK_OVERLOAD;
+        assert_int_equal(governs == FW_CHECK_FOOT, foot);
+        assert_int_not_equal(governs, FW_CHECK_SHAFT);
         fw_report_free(&report);
         s.job.rules.margin = worst;
-        assert_false(has(&s, kind[foot], FW_PASS));
+        assert_false(has(&s, kind, FW_PASS));
         s.job.rules.margin = worst * (1 + 1e-9);
-        assert_true(has(&s, kind[foot], FW_FAILED));
+        assert_true(has(&s, kind, FW_FAILED));
         stage_free(&s);
     }
 }
@@ -255,8 +260,8 @@ static void margins_by_hand(void **state)
             tip_px += stage_at(&s, x, y, 19);
     const fw_post_result *r = &report.post_result[0];
     assert_near(r->contact_mm2, (double)tip_px * 0.01, 1e-9);
-    assert_int_equal(r->governs, FW_CHECK_TIP);
-    assert_near(r->margin, (double)tip_px * 0.01 * 8 / r->load_N, 1e-9);
+    assert_true(r->governs == FW_CHECK_TIP || r->governs == FW_CHECK_NECK);
+    assert_near(r->margin, (double)tip_px * 0.01 * 8 / r->load_N, 1e-3);
     assert_near(report.totals.tip_area_mm2, 2 * (double)tip_px * 0.01, 1e-9);
     assert_near(report.part[0].worst_margin, fmin(r->margin, report.post_result[1].margin), 1e-12);
     assert_int_equal(report.part[0].posts, 2);
