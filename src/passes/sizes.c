@@ -1,7 +1,5 @@
 #include "passes/sizes.h"
 
-#include "physics/strength.h"
-
 #include <math.h>
 
 static double pitch(const fw_post *a, const fw_post *b)
@@ -28,21 +26,29 @@ static double foot_room(const fw_sizing *sizing, size_t index)
     return room;
 }
 
-/* Feet that have grown together lose area to each other: where the group falls short, each of them
- * is sized for as much more than its own load. */
-static fw_post_demand demand_of(const fw_sizing *sizing, size_t index)
+/* Where the judge measured less area than the load wants, the part of the area that is lost (to an
+ * edge that the tip reaches over, to feet that have grown together) is made up for by as much more
+ * load. */
+static void make_up(const fw_sizing *sizing, fw_post_check check, const fw_post_demand *judged,
+                    const fw_post_section *section, fw_post_demand *own)
 {
-    const fw_resin *resin = &sizing->job->resin;
+    const double margin =
+        fw_margin_of(&sizing->job->resin, check, section->area_mm2[check], judged->load_N[check]);
+    if (margin > 0 && margin < sizing->job->rules.margin)
+        own->load_N[check] *= sizing->job->rules.margin / margin;
+}
+
+static fw_post_demand short_demand_of(const fw_sizing *sizing, size_t index)
+{
     const fw_share *share = fw_judge_share(sizing->judge);
     fw_post_demand judged, own;
     fw_post_section section;
     fw_share_demand(share, index, &own);
     fw_share_judged(share, index, &judged, &section);
-    const double holds =
-        fw_strength_adhesion_N(resin->plate_adhesion_MPa, section.area_mm2[FW_POST_FOOT]);
-    const double wanted = judged.load_N[FW_POST_FOOT] * sizing->job->rules.margin;
-    if (share->post[index].group >= 0 && wanted > holds)
-        own.load_N[FW_POST_FOOT] *= wanted / holds;
+    if (share->post[index].contact_known)
+        make_up(sizing, FW_POST_TIP, &judged, &section, &own);
+    if (share->post[index].group >= 0)
+        make_up(sizing, FW_POST_FOOT, &judged, &section, &own);
     return own;
 }
 
@@ -71,15 +77,19 @@ static fw_status set_one(fw_sizing *sizing, size_t index, fw_fault *fault)
     const fw_setup *setup = fw_judge_setup(sizing->judge);
     fw_post *post = &sizing->posts->item[index];
     const fw_post before = *post;
-    const fw_size_input input = {.screen = sizing->screen,
-                                 .layer_mm = setup->t_mm,
-                                 .solid_least = setup->solid_least,
-                                 .resin = &sizing->job->resin,
-                                 .rules = &sizing->job->rules,
-                                 .demand = demand_of(sizing, index),
-                                 .foot_room_mm = foot_room(sizing, index),
-                                 .grow_only = sizing->grow_only};
+    fw_size_input input = {.screen = sizing->screen,
+                           .layer_mm = setup->t_mm,
+                           .solid_least = setup->solid_least,
+                           .resin = &sizing->job->resin,
+                           .rules = &sizing->job->rules,
+                           .foot_room_mm = foot_room(sizing, index),
+                           .grow_only = sizing->grow_only};
+    fw_share_demand(fw_judge_share(sizing->judge), index, &input.demand);
     FW_TRY(size_one(input, post, &sizing->missed[index], fault));
+    if (same_sizes(&before, post)) { /* grown enough by itself, and yet judged to be short? */
+        input.demand = short_demand_of(sizing, index);
+        FW_TRY(size_one(input, post, &sizing->missed[index], fault));
+    }
     sizing->changed = sizing->changed || !same_sizes(&before, post);
     return FW_OK;
 }
