@@ -3,6 +3,7 @@
 
 #include "cards/yaml_read.h"
 #include "fault/memory.h"
+#include "physics/cure.h"
 #include "physics/separation.h"
 
 #include <errno.h>
@@ -96,6 +97,15 @@ static fw_status check_names(const fw_yaml_marks *marks, const char *names, fw_f
                               "'%s' needs one run of # where the number stands, and no folder",
                               names);
     return FW_OK;
+}
+
+static fw_status check_grey(const fw_yaml_marks *marks, const fw_machine *machine, fw_fault *fault)
+{
+    if (!fw_yaml_given(marks, "grey") || fw_cure_is_response(&machine->grey))
+        return FW_OK;
+    return fw_yaml_refuse(marks, "grey", fault,
+                          "is no response: begin with [0, 0], end with [1, 1], greys rising and "
+                          "doses never falling");
 }
 
 static fw_status check_gap(const fw_yaml_marks *marks, fw_machine *machine, fw_fault *fault)
@@ -204,10 +214,40 @@ fw_status fw_job_curable(const fw_job *job, const char *path, fw_fault *fault)
 
 /* --- the three readers --- */
 
+/* Strength at the card's exposure, from one value or from several. */
+static fw_status set_tensile(const fw_yaml_marks *marks, fw_resin *resin, fw_fault *fault)
+{
+    const char *one = "green.tensile_MPa", *several = "green.tensile_mJ_cm2_MPa";
+    const fw_points *points = &resin->tensile_mJ_cm2_MPa;
+    if (fw_yaml_given(marks, one) == fw_yaml_given(marks, several))
+        return fw_yaml_refuse(marks, "green", fault,
+                              "give tensile_MPa or tensile_mJ_cm2_MPa, one of the two");
+    if (!fw_yaml_given(marks, several))
+        return FW_OK;
+    double before[2] = {resin->critical_mJ_cm2, 0};
+    for (int i = 0; i < points->count; i++) {
+        if (!(points->at[i][0] > before[0]) || !(points->at[i][1] > before[1]))
+            return fw_yaml_refuse(marks, several, fault,
+                                  "pair %d does not grow on the one before it, the first from "
+                                  "critical_mJ_cm2 and 0 MPa on",
+                                  i + 1);
+        before[0] = points->at[i][0];
+        before[1] = points->at[i][1];
+    }
+    if (points->count == 0)
+        return fw_yaml_refuse(marks, several, fault, "is empty; give one pair at least");
+    resin->tensile_MPa = fw_cure_green(points, resin->critical_mJ_cm2, resin->exposure_mJ_cm2);
+    if (resin->tensile_MPa > 0)
+        return FW_OK;
+    return fw_yaml_refuse(marks, several, fault, "gives no strength at cure.exposure_mJ_cm2");
+}
+
 static fw_status read_resin(const char *path, fw_resin *out, fw_yaml_marks *marks, fw_fault *fault)
 {
     *out = (fw_resin){0};
     fw_status status = fw_yaml_read(path, &fw_resin_table, out, marks, fault);
+    if (status == FW_OK)
+        status = set_tensile(marks, out, fault);
     if (status != FW_OK)
         *out = (fw_resin){0};
     return status;
@@ -224,6 +264,8 @@ fw_status fw_machine_read(const char *path, fw_machine *out, fw_fault *fault)
     fw_yaml_marks marks;
     *out = (fw_machine){0};
     fw_status status = fw_yaml_read(path, &fw_machine_table, out, &marks, fault);
+    if (status == FW_OK)
+        status = check_grey(&marks, out, fault);
     if (status == FW_OK)
         status = check_mode(&marks, out, fault);
     if (status == FW_OK)

@@ -65,7 +65,7 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
                     "whether the measured separation law holds here: it knows no gap, viscosity "
                     "or speed, and nothing beyond the shapes and areas that it was measured on");
     not_checked(out, "buckling of posts, punching of the skin round a tip, necks within the part");
-    not_checked(out, "undercured and bled features, and the dose of other layers");
+    not_checked(out, "bled features, and the dose of other layers");
 }
 
 static void sum_up(const fw_conclusion *conclusion, fw_report *out)

@@ -1,5 +1,6 @@
 #include "check/ground.h"
 
+#include "check/undercure.h"
 #include "check/voids.h"
 #include "fault/memory.h"
 
@@ -346,6 +347,7 @@ fw_status fw_ground_step(fw_ground *ground, fw_sheet *sheet, const fw_sheet *bef
     FW_TRY(decide_onsets(ground, sheet->layer - ground->setup->job->heal_layers, findings, fault));
     FW_TRY(note_gap(ground, sheet, findings, fault));
     FW_TRY(note_border(ground->setup, sheet, findings, fault));
+    FW_TRY(fw_undercure_step(ground->setup, sheet, findings, fault));
     FW_TRY(fw_voids_step(ground, sheet, before, row, findings, fault));
     return fw_vents_step(&ground->vents, sheet, findings, fault);
 }

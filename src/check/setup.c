@@ -75,7 +75,8 @@ fw_setup fw_setup_make(const fw_job *job, int32_t width, int32_t height, int32_t
     setup.vent_px[1] = job->vent_mm / 2 / setup.py_mm * (1 - 1e-9);
     if (job->has_resin) {
         const double degree = acos(-1.0) / 180;
-        setup.solid_least = fw_cure_solid_least(&job->resin, job->layer_um, full);
+        setup.solid_least =
+            fw_cure_solid_least(&job->resin, &job->machine.grey, job->layer_um, full);
         setup.credit_mm = setup.t_mm / tan(job->resin.angle_deg * degree);
         setup.reach_mm = job->resin.reach_mm;
     }

@@ -18,6 +18,9 @@ static const kind_row kinds[FW_KIND_COUNT] = {
                                    "allows: add a tip nearer to it"},
     [FW_GAP_LAYER] = {"gap-layer", "an empty layer between layers with something: the part would "
                                    "part there; check the export"},
+    [FW_UNDERCURE] = {"undercure",
+                      "the masks ask for more than this exposure cures through the layer: "
+                      "expose more, slice thinner, or draw it in full grey"},
     [FW_BLIND_CAVITY] = {"blind-cavity",
                          "closed toward the plate and around, open only at the "
                          "window: it sucks while peeling; a vent near its plate end "

@@ -11,6 +11,7 @@ typedef enum fw_kind {
     FW_ADRIFT,
     FW_OVERREACH,
     FW_GAP_LAYER,
+    FW_UNDERCURE,
     FW_BLIND_CAVITY,
     FW_POOR_VENT,
     FW_ENCLOSED_RESIN,

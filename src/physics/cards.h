@@ -21,12 +21,13 @@ typedef struct fw_resin {
     char lot[FW_CARD_TEXT]; /* empty when not given */
     fw_basis basis_viscosity, basis_cure, basis_green, basis_support;
     double viscosity_mPa_s;
-    double penetration_um;  /* Dp, working curve */
-    double critical_mJ_cm2; /* Ec, working curve */
-    double exposure_mJ_cm2; /* E0 at the window, fully lit */
-    double joint_ratio;     /* dose through the layer over Ec that makes a joint, >= 1 */
-    double tensile_MPa;     /* green */
-    double modulus_MPa;     /* green */
+    double penetration_um;        /* Dp, working curve */
+    double critical_mJ_cm2;       /* Ec, working curve */
+    double exposure_mJ_cm2;       /* E0 at the window, fully lit */
+    double joint_ratio;           /* dose through the layer over Ec that makes a joint, >= 1 */
+    double tensile_MPa;           /* green, at exposure_mJ_cm2 */
+    fw_points tensile_mJ_cm2_MPa; /* as measured at several exposures; empty: at one */
+    double modulus_MPa;           /* green */
     double plate_adhesion_MPa;
     double reach_mm;  /* how far fresh solid may extend from what holds it */
     double angle_deg; /* self-supporting angle from the plate */
@@ -54,6 +55,7 @@ typedef struct fw_machine {
     double cap_kPa;         /* suction that the liquid can hold, gauge */
     double stiffness_N_mm;  /* of frame, plate and drive as one spring; 0 = rigid */
     double drive_limit_N;   /* 0 = not given */
+    fw_points grey;         /* response: dose share against grey share; empty: linear */
     double plate_mm[2];
     int mask_px[2]; /* 0, 0 = not given */
 } fw_machine;

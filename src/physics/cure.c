@@ -80,18 +80,13 @@ static int32_t least_with(const fw_points *response, double share, int32_t full)
     return high;
 }
 
-int32_t fw_cure_solid_least_of(const fw_resin *resin, const fw_points *response, double layer_um,
-                               int32_t full)
+int32_t fw_cure_solid_least(const fw_resin *resin, const fw_points *response, double layer_um,
+                            int32_t full)
 {
     double need_mJ_cm2 =
         fw_cure_dose(resin->penetration_um, resin->joint_ratio * resin->critical_mJ_cm2, layer_um);
     double share = need_mJ_cm2 / resin->exposure_mJ_cm2;
     return share <= 1.0 ? least_with(response, share, full) : INT32_MAX;
-}
-
-int32_t fw_cure_solid_least(const fw_resin *resin, double layer_um, int32_t full)
-{
-    return fw_cure_solid_least_of(resin, NULL, layer_um, full);
 }
 
 /* 1 - exp(-t / Dp) as -expm1, which keeps its digits for thin layers. */

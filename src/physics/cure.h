@@ -37,11 +37,8 @@ double fw_cure_response(const fw_points *response, double grey);
 
 /* The smallest grey (1 .. full) that joins a layer to the one before: E0 r(g / full) exp(-t / Dp)
  * >= joint_ratio Ec, r the response. INT32_MAX when even full grey does not. */
-int32_t fw_cure_solid_least_of(const fw_resin *resin, const fw_points *response, double layer_um,
-                               int32_t full);
-
-/* The same with a linear response. */
-int32_t fw_cure_solid_least(const fw_resin *resin, double layer_um, int32_t full);
+int32_t fw_cure_solid_least(const fw_resin *resin, const fw_points *response, double layer_um,
+                            int32_t full);
 
 /* The smallest grey (1 .. full) with grey / full >= intent_level (0 < intent_level <= 1; full =
  * 2^depth - 1), compared

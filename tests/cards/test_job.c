@@ -4,6 +4,7 @@
 
 #include "cards/job_read.h"
 
+#include <math.h>
 #include <sys/stat.h>
 
 static const char job[] = "stack:\n"
@@ -319,6 +320,42 @@ static void refuses_names_that_are_too_long(void **state)
     check_line(&fault, path, ":1: name: is longer than 127 bytes");
 }
 
+/* Strength by exposure: linear in the logarithm of the dose between the pairs (Jacobs 1992, from
+ * memory).
+ */
+static void strength_follows_the_exposure(void **state)
+{
+    (void)state;
+    static const bad_case text[] = {
+        {"tensile_mJ_cm2_MPa: [[18, 4], [72, 12]]", "8", NULL}, /* half way from 18 to 72 is 36 */
+        {"tensile_mJ_cm2_MPa: [[18, 4], [36, 12]]", "12", NULL},
+        {"tensile_mJ_cm2_MPa: [[20, 7]]", "7", NULL},
+        {"tensile_MPa: 8, tensile_mJ_cm2_MPa: [[20, 7]]", "", ":5: green: give tensile_MPa or"},
+        {"tensile_mJ_cm2_MPa: [[20, 7], [30, 6]]", "",
+         ":5: green.tensile_mJ_cm2_MPa: pair 2 does not grow"},
+        {"tensile_mJ_cm2_MPa: [[8, 7]]", "", ":5: green.tensile_mJ_cm2_MPa: pair 1 does not grow"},
+        {"tensile_mJ_cm2_MPa: []", "", ":5: green.tensile_mJ_cm2_MPa: is empty"},
+    };
+    for (size_t i = 0; i < sizeof text / sizeof *text; i++) {
+        char card[768];
+        fw_resin r;
+        fw_fault fault = {0};
+        (void)snprintf(card, sizeof card,
+                       "name: R\nviscosity_mPa_s: 350\n"
+                       "cure: {penetration_um: 110, critical_mJ_cm2: 9, exposure_mJ_cm2: 36}\n"
+                       "support: {reach_mm: 1.5, angle_deg: 40}\n"
+                       "green: {%s, modulus_MPa: 250, plate_adhesion_MPa: 0.5}\n",
+                       text[i].from);
+        const char *path = scratch_text("card.yaml", card);
+        const fw_status status = fw_resin_read(path, &r, &fault);
+        assert_int_equal(status, text[i].wanted == NULL ? FW_OK : FW_INPUT);
+        if (text[i].wanted != NULL)
+            check_line(&fault, path, text[i].wanted);
+        else
+            assert_true(fabs(r.tensile_MPa - atof(text[i].to)) < 1e-9);
+    }
+}
+
 /* The laws that know no liquid: what they need, and what they refuse. */
 static void reads_measured_laws(void **state)
 {
@@ -374,6 +411,8 @@ static void refuses_bad_machines(void **state)
         {"mode: pull", "mode: tilt, hinge_mm: here", ":2: separation.hinge_mm: expects pairs"},
         {"mode: pull", "mode: tilt, hinge_mm: [[0, 0], [1, x]]",
          ":2: separation.hinge_mm: 'x' is no"},
+        {"plate:", "grey: [[0, 0], [0.5, 0.6]]\nplate:", ":5: grey: is no response"},
+        {"plate:", "grey: [[0, 0], [0.5, 0.6], [0.5, 0.7], [1, 1]]\nplate:", ":5: grey: is no"},
         {"mode: pull", "mode: [pull]", ":2: separation.mode: expects a text"},
         {"mode: pull, ", "", ":2: separation.mode: missing"},
         {"[40, 250]", "[120, 250]",
@@ -491,6 +530,7 @@ int main(void)
         cmocka_unit_test(absolute_card_paths_stay),
         cmocka_unit_test(refuses_bad_resins),
         cmocka_unit_test(refuses_names_that_are_too_long),
+        cmocka_unit_test(strength_follows_the_exposure),
         cmocka_unit_test(reads_measured_laws),
         cmocka_unit_test(refuses_bad_machines),
         cmocka_unit_test(refuses_a_layer_that_cannot_cure),

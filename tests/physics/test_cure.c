@@ -101,7 +101,7 @@ static void test_solid_least_is_the_smallest_that_cures(void **state)
     for (int i = 0; i < 5; i++) {
         for (double layer_um = 10.0; layer_um < 160.0; layer_um += 7.0) {
             fw_resin resin = resin_of(110.0, 9.0, 38.0, 1.1);
-            int32_t least = fw_cure_solid_least(&resin, layer_um, fulls[i]);
+            int32_t least = fw_cure_solid_least(&resin, NULL, layer_um, fulls[i]);
             if (least == INT32_MAX) {
                 assert_false(cures(&resin, layer_um, fulls[i], fulls[i]));
                 continue;
@@ -118,12 +118,12 @@ static void test_solid_least_by_hand(void **state)
 {
     (void)state;
     fw_resin resin = resin_of(110.0, 9.0, 38.0, 1.0);
-    assert_int_equal(fw_cure_solid_least(&resin, 50.0, 255), 96);
-    assert_int_equal(fw_cure_solid_least(&resin, 50.0, 1), 1);
+    assert_int_equal(fw_cure_solid_least(&resin, NULL, 50.0, 255), 96);
+    assert_int_equal(fw_cure_solid_least(&resin, NULL, 50.0, 1), 1);
     resin.joint_ratio = 2.7;
-    assert_int_equal(fw_cure_solid_least(&resin, 50.0, 255), INT32_MAX);
+    assert_int_equal(fw_cure_solid_least(&resin, NULL, 50.0, 255), INT32_MAX);
     resin.exposure_mJ_cm2 = 0.0;
-    assert_int_equal(fw_cure_solid_least(&resin, 50.0, 255), INT32_MAX);
+    assert_int_equal(fw_cure_solid_least(&resin, NULL, 50.0, 255), INT32_MAX);
 }
 
 static void test_intended_least_is_exact(void **state)
@@ -202,7 +202,7 @@ static void test_solid_least_of_a_response(void **state)
                 expected++;
             if (expected > fulls[i])
                 expected = INT32_MAX;
-            assert_int_equal(fw_cure_solid_least_of(&resin, &bent, layer_um, fulls[i]), expected);
+            assert_int_equal(fw_cure_solid_least(&resin, &bent, layer_um, fulls[i]), expected);
         }
     }
 }
@@ -214,8 +214,8 @@ static void test_solid_least_at_equality(void **state)
     const fw_resin resin =
         resin_of(110.0, 9.0, 18.0, 1.0); /* no thickness: half the dose is needed */
     const fw_points knee = {3, {{0, 0}, {1 / 3.0, 0.5}, {1, 1}}};
-    assert_int_equal(fw_cure_solid_least_of(&resin, &knee, 0, 3), 1);
-    assert_int_equal(fw_cure_solid_least_of(&resin, NULL, 0, 3), 2);
+    assert_int_equal(fw_cure_solid_least(&resin, &knee, 0, 3), 1);
+    assert_int_equal(fw_cure_solid_least(&resin, NULL, 0, 3), 2);
 }
 
 /* (20 mJ/cm2, 100 um) and (50, 200): Dp = 100 / ln 2.5 = 109.135667 um, Ec = 8 (derived). */
