@@ -64,7 +64,10 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out,
                     "whether the measured separation law holds here: it knows no gap, viscosity "
                     "or speed, and nothing beyond the shapes and areas that it was measured on");
-    not_checked(out, "buckling of posts, punching of the skin round a tip, necks within the part");
+    not_checked(out, "punching of the skin round a tip, necks within the part");
+    if (job->machine.approach_mm_s == 0)
+        not_checked(out, "the push on the posts on the way back to the window: the machine card "
+                         "says nothing of it");
     not_checked(out, "bled features, and the dose of other layers");
 }
 

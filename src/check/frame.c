@@ -1,6 +1,7 @@
 #include "check/frame.h"
 
 #include "fault/memory.h"
+#include "physics/approach.h"
 #include "physics/bracket.h"
 #include "physics/pulloff.h"
 
@@ -165,4 +166,36 @@ fw_status fw_frame_range(const fw_setup *setup, fw_film_memo *memo, const fw_pee
         status = find_peak(setup, &law, setup->job->machine.gap_range_um[end], force_N, fault);
     free(law.piece);
     return status;
+}
+
+/* G of the layer, without a cap. */
+static fw_status free_integral(fw_film_memo *memo, const fw_peel *peel, double *sum,
+                               fw_fault *fault)
+{
+    *sum = 0;
+    for (uint32_t c = 0; c < peel->count; c++) {
+        const fw_cluster *cluster = &peel->cluster[c];
+        const fw_film_solution *solution = cluster->solution;
+        if (solution != NULL && solution->capped)
+            FW_TRY(solve_at(memo, cluster, INFINITY, &solution, fault));
+        *sum += solution != NULL ? solution->integral_mm4 : cluster->bound_mm4;
+    }
+    return FW_OK;
+}
+
+fw_status fw_frame_approach(const fw_setup *setup, fw_film_memo *memo, fw_peel *peel,
+                            fw_fault *fault)
+{
+    const fw_machine *machine = &setup->job->machine;
+    fw_approach approach = {.viscosity_mPa_s = setup->job->resin.viscosity_mPa_s,
+                            .speed_mm_s = machine->approach_mm_s,
+                            .to_um = machine->approach_to_um,
+                            .stiffness_N_mm = machine->stiffness_N_mm,
+                            .stop = FW_APPROACH_DRIVE};
+    double gap_um;
+    peel->push_N = 0;
+    if (machine->approach_mm_s == 0 || setup->traction.law != FW_TRACTION_NONE || peel->count == 0)
+        return FW_OK;
+    FW_TRY(free_integral(memo, peel, &approach.integral_mm4, fault));
+    return fw_approach_solve(&approach, &peel->push_N, &gap_um, fault);
 }

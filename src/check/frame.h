@@ -15,4 +15,9 @@ fw_status fw_frame_relax(const fw_setup *setup, fw_film_memo *memo, fw_peel *pee
 fw_status fw_frame_range(const fw_setup *setup, fw_film_memo *memo, const fw_peel *peel, int end,
                          double *force_N, fw_fault *fault);
 
+/* Sets peel->push_N: the layer on its way back to the window, at the card's speed down to its gap.
+ * Films squeezed have no cap. Before fw_frame_relax. */
+fw_status fw_frame_approach(const fw_setup *setup, fw_film_memo *memo, fw_peel *peel,
+                            fw_fault *fault);
+
 #endif

@@ -76,6 +76,30 @@ static fw_status note_overload(const fw_conclusion *conclusion, const fw_post *p
     return fw_findings_add(&out->findings, &finding, fault);
 }
 
+static fw_status judge_push(const fw_conclusion *conclusion, size_t index, fw_report *out,
+                            fw_fault *fault)
+{
+    const fw_job *job = conclusion->setup->job;
+    const fw_post *post = &conclusion->posts->item[index];
+    const fw_post_push *push = &conclusion->share->post[index].push;
+    fw_post_result *result = &out->post_result[index];
+    const double margin =
+        fw_post_push_margin(post, job->resin.modulus_MPa, conclusion->setup->t_mm, push);
+    if (margin < result->margin || isnan(result->margin)) {
+        result->margin = margin;
+        result->governs = isnan(margin) ? result->governs : FW_CHECK_BUCKLING;
+    }
+    if (!(margin < job->rules.margin))
+        return FW_OK;
+    fw_finding finding = of_post(post, FW_SHAFT_BUCKLING);
+    finding.margin = margin;
+    finding.badness = -margin;
+    (void)snprintf(finding.message, sizeof finding.message,
+                   "post %d is pushed by %.4g N and buckles at %.3g times that, the gate asks %.3g",
+                   post->id, fmax(push->free_N, push->braced_N), margin, job->rules.margin);
+    return fw_findings_add(&out->findings, &finding, fault);
+}
+
 static fw_status judge_post(const fw_conclusion *conclusion, size_t index, fw_report *out,
                             fw_fault *fault)
 {
@@ -106,7 +130,7 @@ static fw_status judge_post(const fw_conclusion *conclusion, size_t index, fw_re
         if (failed.margin < setup->job->rules.margin)
             FW_TRY(note_overload(conclusion, post, failed, out, fault));
     }
-    return FW_OK;
+    return judge_push(conclusion, index, out, fault);
 }
 
 fw_status fw_gate_posts(const fw_conclusion *conclusion, fw_report *out, fw_fault *fault)

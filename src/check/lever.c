@@ -167,8 +167,10 @@ static fw_status make_group(fw_lever *lever, size_t first, size_t end, fw_fault 
     *made =
         (fw_lever_group){.root = lever->anchor[first].root, .first = first, .count = end - first};
     fw_group_begin(&made->group, middle);
-    for (size_t i = first; i < end; i++)
+    for (size_t i = first; i < end; i++) {
+        lever->anchor[i].fellows = end - first - 1;
         fw_group_add(&made->group, &lever->anchor[i].stiffness);
+    }
     return fw_group_factor(&made->group, fault);
 }
 

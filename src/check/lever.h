@@ -20,10 +20,11 @@
 enum { FW_LEVER_NODES = FW_POST_POINTS + 4 };
 
 typedef struct fw_lever_anchor {
-    int32_t post;  /* index, or -1: a plate contact */
-    int32_t plate; /* index, or -1 */
-    uint32_t part; /* id of the part's body when it was attached */
-    uint32_t root; /* of that body now */
+    int32_t post;   /* index, or -1: a plate contact */
+    int32_t plate;  /* index, or -1 */
+    uint32_t part;  /* id of the part's body when it was attached */
+    uint32_t root;  /* of that body now */
+    size_t fellows; /* other anchors of that body */
     fw_anchor_stiffness stiffness;
     double over_ixx, over_iyy; /* plate contact: 1/mm3, distance of the furthest pixel over I */
 } fw_lever_anchor;

@@ -7,6 +7,7 @@
 typedef struct booking {
     fw_share *share;
     fw_layer_row *row;
+    double push_per_pull; /* of the layer's two strokes */
 } booking;
 
 /* The pull that strains a round section of this area as N and M together do. */
@@ -55,7 +56,12 @@ static fw_status book_members(const booking *now, int32_t index, const double fo
 static fw_status take_post(const booking *now, int32_t index, const double force[6],
                            fw_fault *fault)
 {
-    const double area = now->share->post[index].section.area_mm2[FW_POST_TIP];
+    fw_post_account *account = &now->share->post[index];
+    const double area = account->section.area_mm2[FW_POST_TIP];
+    if (force[2] < 0)
+        fw_share_push(account, -force[2]);
+    else
+        fw_share_push(account, force[2] * now->push_per_pull);
     book(now, index, FW_POST_TIP, equal_pull_N(force[2], hypot(force[3], force[4]), area));
     return book_members(now, index, force, fault);
 }
@@ -80,6 +86,8 @@ static fw_status take(void *context, const fw_lever_anchor *anchor, const double
 {
     const booking *now = context;
     if (anchor->post >= 0)
+        now->share->post[anchor->post].braced = anchor->fellows >= 2;
+    if (anchor->post >= 0)
         return take_post(now, anchor->post, force, fault);
     take_plate(now, anchor, force);
     return FW_OK;
@@ -87,7 +95,9 @@ static fw_status take(void *context, const fw_lever_anchor *anchor, const double
 
 fw_status fw_lever_share(fw_share *share, const fw_sheet *sheet, fw_layer_row *row, fw_fault *fault)
 {
-    booking now = {share, row};
+    booking now = {share, row, 0};
+    if (sheet->peel.force_N > 0)
+        now.push_per_pull = sheet->peel.push_N / sheet->peel.force_N;
     const fw_lever_taker taker = {take, &now};
     return fw_lever_step(&share->lever, sheet, &taker, fault);
 }

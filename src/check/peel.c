@@ -222,6 +222,8 @@ fw_status fw_peel_solve(const fw_setup *setup, const fw_slice *slice, const uint
     out->q = setup->q;
     out->rigid_N = out->force_N;
     if (status == FW_OK)
+        status = fw_frame_approach(setup, memo, out, fault);
+    if (status == FW_OK)
         status = fw_frame_relax(setup, memo, out, fault);
     sum_up(out);
     if (out->force_N < 0.99 * out->rigid_N && out->limited_by != FW_BY_CAP)

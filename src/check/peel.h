@@ -48,6 +48,7 @@ typedef struct fw_peel {
     size_t of_region_capacity, of_void_capacity, cavity_of_capacity;
     double q;       /* of all its clusters when the layer comes off */
     double rigid_N; /* what a rigid machine would pull */
+    double push_N;  /* of the way back to the window; 0 where the card says nothing of it */
     double force_N, range_N[2];
     fw_limit limited_by;
     int32_t coarse_px; /* cells of the coarsest film solved on coarser ones than asked; 0: none */

@@ -16,7 +16,7 @@ const char *fw_verdict_name(fw_verdict verdict)
 
 const char *fw_check_name(fw_check check)
 {
-    static const char *const name[] = {"none", "tip", "neck", "shaft", "foot"};
+    static const char *const name[] = {"none", "tip", "neck", "shaft", "foot", "buckling"};
     return name[check];
 }
 

@@ -43,9 +43,10 @@ typedef enum fw_check {
     FW_CHECK_TIP,
     FW_CHECK_NECK,
     FW_CHECK_SHAFT,
-    FW_CHECK_FOOT
+    FW_CHECK_FOOT,
+    FW_CHECK_BUCKLING
 } fw_check;
-const char *fw_check_name(fw_check check); /* "none", "tip", "neck", "shaft", "foot" */
+const char *fw_check_name(fw_check check); /* "none", "tip", "neck", "shaft", "foot", "buckling" */
 
 typedef struct fw_post_result {
     double load_N;      /* largest tributary load on the tip */

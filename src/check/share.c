@@ -190,12 +190,28 @@ static void load_groups(fw_share *share)
     }
 }
 
-static fw_status book_posts(fw_share *share, int32_t layer, fw_layer_row *rows, fw_fault *fault)
+void fw_share_push(fw_post_account *account, double push_N)
 {
+    double *most = account->braced ? &account->push.braced_N : &account->push.free_N;
+    *most = fmax(*most, push_N);
+}
+
+/* On its way back the layer pushes as it pulled: the film is the same, without a cap. */
+static void raise_push(const fw_sheet *sheet, fw_post_account *account)
+{
+    if (sheet->peel.push_N > 0 && sheet->peel.force_N > 0)
+        fw_share_push(account, account->tip_N * sheet->peel.push_N / sheet->peel.force_N);
+}
+
+static fw_status book_posts(fw_share *share, const fw_sheet *sheet, fw_layer_row *rows,
+                            fw_fault *fault)
+{
+    const int32_t layer = sheet->layer;
     load_groups(share);
     for (size_t i = 0; i < share->touched_count; i++) {
         fw_post_account *account = &share->post[share->touched[i]];
         raise_demand(account, layer);
+        raise_push(sheet, account);
         if (account->group >= 0)
             account->group_N = fmax(account->group_N, share->group[account->group].layer_N);
         if (share->plan != NULL)
@@ -291,7 +307,7 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
     taking now = {share, sheet->layer};
     const fw_load_taker taker = {take_anchor, take_post, &now};
     FW_TRY(fw_loads_hand_out(share->setup, sheet, share->tributary, &share->loads, &taker, fault));
-    FW_TRY(book_posts(share, sheet->layer, rows, fault));
+    FW_TRY(book_posts(share, sheet, rows, fault));
     book_plates(share, sheet->layer, rows);
     return fw_lever_share(share, sheet, &rows[sheet->layer], fault);
 }

@@ -7,6 +7,7 @@
 #include "check/loads.h"
 #include "check/sheet.h"
 #include "check/together.h"
+#include "posts/buckling.h"
 #include "posts/margins.h"
 #include "posts/tributary.h"
 
@@ -24,6 +25,8 @@ typedef struct fw_post_account {
     fw_post_demand demand;          /* largest so far, per check */
     fw_post_section section;        /* smallest solid areas so far; INFINITY = not seen yet */
     double lever_N[FW_POST_CHECKS]; /* largest by rigid share so far, as equal pulls */
+    fw_post_push push;              /* largest so far */
+    bool braced;                    /* its part has three anchors or more: the tip cannot sway */
     int32_t load_layer;             /* of the largest tip load; -1 */
     int32_t seen_layers;            /* layers below the tip in which it has any solid pixel */
     bool contact_known;             /* its end in the part was measured */
@@ -89,6 +92,9 @@ void fw_share_settle(fw_share *share, int32_t post, fw_layer_row *rows);
 /* After the last layer: posts whose contact was never seen count as holding nothing. */
 void fw_share_finish(fw_share *share, fw_layer_row *rows);
 void fw_share_close(fw_share *share);
+
+/* A push on the post in the layer at hand. */
+void fw_share_push(fw_post_account *account, double push_N);
 
 /* What a post has to carry by the layers so far: the larger of its tributary share, with what it
  * carries for posts that run into it, and of its rigid share. */

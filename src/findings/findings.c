@@ -35,6 +35,9 @@ static const kind_row kinds[FW_KIND_COUNT] = {
     [FW_NECK_OVERLOAD] = {"neck-overload", "the taper carries more than the green strength allows"},
     [FW_SHAFT_OVERLOAD] = {"shaft-overload", "the column carries more than the green strength "
                                              "allows"},
+    [FW_SHAFT_BUCKLING] = {"shaft-buckling",
+                           "the post is pushed, by the way back to the window or by "
+                           "lever action, and is too slender for it: a wider shaft"},
     [FW_FOOT_OVERLOAD] = {"foot-overload", "the foot pulls harder on the plate than the resin "
                                            "adheres: a larger foot"},
     [FW_PLATE_OVERLOAD] = {"plate-overload", "the part pulls harder on the plate than the resin "

@@ -5,7 +5,9 @@
 #include <math.h>
 #include <stdlib.h>
 
-enum { OVERLOADED = FW_MISSED_TIP | FW_MISSED_NECK | FW_MISSED_SHAFT | FW_MISSED_FOOT };
+enum {
+    OVERLOADED = FW_MISSED_TIP | FW_MISSED_NECK | FW_MISSED_SHAFT | FW_MISSED_FOOT | FW_MISSED_PUSH
+};
 
 static double disc_mm2(double diameter_mm)
 {

@@ -82,6 +82,7 @@ static fw_status set_one(fw_sizing *sizing, size_t index, fw_fault *fault)
                            .solid_least = setup->solid_least,
                            .resin = &sizing->job->resin,
                            .rules = &sizing->job->rules,
+                           .push = fw_judge_share(sizing->judge)->post[index].push,
                            .foot_room_mm = foot_room(sizing, index),
                            .grow_only = sizing->grow_only};
     fw_share_demand(fw_judge_share(sizing->judge), index, &input.demand);

@@ -54,8 +54,9 @@ typedef struct fw_machine {
     double gap_range_um[2]; /* both gap_um when not given */
     double cap_kPa;         /* suction that the liquid can hold, gauge */
     double stiffness_N_mm;  /* of frame, plate and drive as one spring; 0 = rigid */
-    double drive_limit_N;   /* 0 = not given */
-    fw_points grey;         /* response: dose share against grey share; empty: linear */
+    double approach_mm_s, approach_to_um; /* the way back to the window; 0 = not given */
+    double drive_limit_N;                 /* 0 = not given */
+    fw_points grey; /* response: dose share against grey share; empty: linear */
     double plate_mm[2];
     int mask_px[2]; /* 0, 0 = not given */
 } fw_machine;

@@ -123,6 +123,21 @@ static bool shaft_holds(sizing *s, int64_t um, int32_t layer)
     return section_holds(s, FW_POST_SHAFT, layer);
 }
 
+/* margin: NAN where nothing pushes. */
+static bool stands(const sizing *s)
+{
+    const double margin =
+        fw_post_push_margin(&s->post, s->in->resin->modulus_MPa, s->in->layer_mm, &s->in->push);
+    return !(margin < s->in->rules->margin);
+}
+
+static bool shaft_stands(sizing *s, int64_t um, int32_t layer)
+{
+    (void)layer;
+    s->post.shaft_mm = s->post.foot_mm = (double)um / UM;
+    return stands(s);
+}
+
 static bool foot_holds(sizing *s, int64_t um, int32_t layer)
 {
     s->post.foot_mm = (double)um / UM;
@@ -181,6 +196,7 @@ static int64_t size_shaft(sizing *s, const fw_post *now, int64_t tip, int32_t ne
 {
     const double *limit = s->in->rules->shaft_mm;
     range allowed = allowed_range(s, limit[0], limit[1], tip, now->shaft_mm);
+    allowed.low = smallest(s, allowed, shaft_stands, 0);
     return smallest_over(s, allowed, shaft_holds, 0, neck);
 }
 
@@ -218,6 +234,8 @@ static unsigned missed_checks(const sizing *s)
     }
     if (s->post.foot_mm > s->in->foot_room_mm)
         missed |= FW_MISSED_ROOM;
+    if (!stands(s))
+        missed |= FW_MISSED_PUSH;
     return missed;
 }
 

@@ -9,6 +9,7 @@
 #define FW_SIZE_H
 
 #include "physics/cards.h"
+#include "posts/buckling.h"
 #include "posts/disc.h"
 #include "posts/margins.h"
 #include "posts/post.h"
@@ -17,9 +18,10 @@ typedef struct fw_size_input {
     const fw_screen *screen;
     double layer_mm;
     int32_t solid_least;        /* grey from which a pixel is solid */
-    const fw_resin *resin;      /* tensile_MPa, plate_adhesion_MPa */
+    const fw_resin *resin;      /* tensile_MPa, plate_adhesion_MPa, modulus_MPa */
     const fw_post_rules *rules; /* ranges of diameters, margin */
     fw_post_demand demand;
+    fw_post_push push;   /* N */
     double foot_room_mm; /* largest foot: pitch to the nearest one less clearance; INFINITY
                             when it stands alone */
     bool grow_only;      /* the post's diameters are lower limits */
@@ -32,6 +34,7 @@ enum {
     FW_MISSED_SHAFT = 1 << FW_POST_SHAFT,
     FW_MISSED_FOOT = 1 << FW_POST_FOOT,
     FW_MISSED_ROOM = 1 << FW_POST_CHECKS, /* the foot is wider than foot_room_mm */
+    FW_MISSED_PUSH = 2 << FW_POST_CHECKS, /* it buckles */
 };
 
 typedef struct fw_size_outcome {
@@ -44,7 +47,8 @@ typedef struct fw_size_outcome {
  * layer before it.
  *   tip    smallest for which contact and every neck section hold, within rules->tip_mm, with the
  *          narrowest shaft (so that it does not shrink where a larger load widens the shaft)
- *   shaft  smallest for which every shaft section holds, within rules->shaft_mm, never below tip
+ *   shaft  smallest for which every shaft section holds and the post does not buckle, within
+ *          rules->shaft_mm, never below tip
  *   foot   smallest for which the plate holds it, never below shaft, at most rules->foot_mm and
  *          foot_room_mm
  * FW_INPUT when a diameter, limit or place is not a number that can be used. */

@@ -215,12 +215,38 @@ static void an_arm_loads_by_its_lever(void **state)
     stage_free(&s);
 }
 
+/* A plate on one tall thin post, pushed on the way back: it buckles where it held the pull. */
+static void a_tall_post_buckles(void **state)
+{
+    (void)state;
+    stage s = stage_new(60, 60, 84);
+    s.job.resin.reach_mm = 12;
+    s.job.resin.tensile_MPa = 100;
+    s.job.resin.plate_adhesion_MPa = 50;
+    s.job.resin.modulus_MPa = 20;
+    stage_post(&s, 3.0, 3.0, 80, true);
+    stage_box(&s, 15, 15, 80, 45, 45, 84, 255);
+    fw_report pulled = stage_judge(&s);
+    assert_null(finding_of(&pulled, FW_SHAFT_BUCKLING));
+    s.job.machine.approach_mm_s = 2;
+    s.job.machine.approach_to_um = 60;
+    fw_report pushed = stage_judge(&s);
+    const fw_finding *finding = finding_of(&pushed, FW_SHAFT_BUCKLING);
+    assert_non_null(finding);
+    assert_int_equal(finding->severity, FW_FAIL);
+    assert_int_equal(pushed.post_result[0].governs, FW_CHECK_BUCKLING);
+    assert_near(pushed.post_result[0].margin, finding->margin, 1e-12);
+    fw_report_free(&pulled);
+    fw_report_free(&pushed);
+    stage_free(&s);
+}
+
 int main(void)
 {
 
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(slender_posts_are_piles), cmocka_unit_test(shares_are_in_balance),
+        cmocka_unit_test(slender_posts_are_piles),   cmocka_unit_test(shares_are_in_balance),
         cmocka_unit_test(one_post_takes_the_moment), cmocka_unit_test(nodes_follow_the_post),
-        cmocka_unit_test(an_arm_loads_by_its_lever)};
+        cmocka_unit_test(an_arm_loads_by_its_lever), cmocka_unit_test(a_tall_post_buckles)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

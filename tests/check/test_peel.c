@@ -451,6 +451,32 @@ static void a_frame_gives_under_the_cap(void **state)
     layer_free(&l);
 }
 
+/* The way back: the same film at the same speed and gap pushes as it pulled (Stefan 1874), cap or
+ * no cap; through a frame the layer lags and pushes less. */
+static void the_way_back_pushes(void **state)
+{
+    (void)state;
+    static const double stiffness[] = {0, 1000}, cap_kPa[] = {1e9, 40};
+    for (int k = 0; k < 4; k++) {
+        layer l = disc(100, 100, 0);
+        fw_machine *machine = &l.stage.job.machine;
+        machine->stiffness_N_mm = stiffness[k % 2];
+        machine->cap_kPa = cap_kPa[k / 2];
+        machine->approach_mm_s = 1;
+        machine->approach_to_um = 100;
+        solve(&l, OPEN_HOLES);
+        if (k % 2 == 0)
+            assert_near(l.peel.push_N, 23.5619449, 5e-3);
+        else
+            assert_true(l.peel.push_N > 0.4 * 23.56 && l.peel.push_N < 0.7 * 23.56);
+        layer_free(&l);
+    }
+    layer still = disc(100, 100, 0);
+    solve(&still, OPEN_HOLES);
+    assert_true(still.peel.push_N == 0);
+    layer_free(&still);
+}
+
 /* A spring for all: two discs pull less than twice as much as one. */
 static void one_spring_for_the_layer(void **state)
 {
@@ -501,6 +527,7 @@ int main(void)
                                        cmocka_unit_test(a_frame_gives),
                                        cmocka_unit_test(a_frame_gives_under_the_cap),
                                        cmocka_unit_test(one_spring_for_the_layer),
+                                       cmocka_unit_test(the_way_back_pushes),
                                        cmocka_unit_test(measured_laws),
                                        cmocka_unit_test(a_plate_that_tilts),
                                        cmocka_unit_test(tilt_over_the_gap_range),
