@@ -159,32 +159,42 @@ static fw_status check_force_table(const fw_yaml_marks *marks, const fw_machine 
 /* Which keys of separation a mode needs and takes. */
 typedef struct mode_key {
     const char *key;
-    bool takes[4], needs[4]; /* by fw_mode */
+    unsigned takes, needs; /* bits by fw_mode */
 } mode_key;
 
+enum {
+    PULL = 1 << FW_MODE_PULL,
+    TILT = 1 << FW_MODE_TILT,
+    FILM = 1 << FW_MODE_FILM,
+    MEASURED = 1 << FW_MODE_MEASURED,
+    SLIDE = 1 << FW_MODE_SLIDE
+};
+
 static const mode_key mode_keys[] = {
-    {"separation.speed_mm_s", {true, true, false, false}, {true, true, false, false}},
-    {"separation.gap_um", {true, true, false, false}, {true, true, false, false}},
-    {"separation.gap_range_um", {true, true, false, false}, {false, false, false, false}},
-    {"separation.cap_kPa", {true, true, true, false}, {false, false, false, false}},
-    {"separation.hinge_mm", {false, true, false, false}, {false, true, false, false}},
-    {"separation.area_kPa", {false, false, true, false}, {false, false, true, false}},
-    {"separation.rim_N_mm", {false, false, true, false}, {false, false, true, false}},
-    {"separation.front_mm", {false, false, true, false}, {false, false, false, false}},
-    {"separation.table_mm2_N", {false, false, false, true}, {false, false, false, true}},
+    {"separation.speed_mm_s", PULL | TILT | SLIDE, PULL | TILT | SLIDE},
+    {"separation.gap_um", PULL | TILT | SLIDE, PULL | TILT | SLIDE},
+    {"separation.gap_range_um", PULL | TILT | SLIDE, 0},
+    {"separation.cap_kPa", PULL | TILT | FILM, 0},
+    {"separation.hinge_mm", TILT, TILT},
+    {"separation.slide_deg", SLIDE, 0},
+    {"separation.area_kPa", FILM, FILM},
+    {"separation.rim_N_mm", FILM, FILM},
+    {"separation.front_mm", FILM, 0},
+    {"separation.table_mm2_N", MEASURED, MEASURED},
 };
 
 static fw_status check_mode(const fw_yaml_marks *marks, const fw_machine *machine, fw_fault *fault)
 {
-    static const char *const name[] = {"pull", "tilt", "film", "measured"};
+    static const char *const name[] = {"pull", "tilt", "film", "measured", "slide"};
     for (size_t i = 0; i < sizeof mode_keys / sizeof *mode_keys; i++) {
         const mode_key *row = &mode_keys[i];
         const bool given = fw_yaml_given(marks, row->key);
-        if (given && !row->takes[machine->mode])
+        const unsigned mode = 1u << machine->mode;
+        if (given && (row->takes & mode) == 0)
             return fw_yaml_refuse(marks, row->key, fault,
                                   "means nothing in mode: %s; leave it out or change the mode",
                                   name[machine->mode]);
-        if (!given && row->needs[machine->mode])
+        if (!given && (row->needs & mode) != 0)
             return fw_yaml_refuse(marks, "separation.mode", fault, "%s needs %s; add it",
                                   name[machine->mode], strchr(row->key, '.') + 1);
     }

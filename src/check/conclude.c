@@ -55,7 +55,10 @@ static void list_not_checked(const fw_conclusion *conclusion, fw_report *out)
         not_checked(out, "peel load: the job names no machine card");
     if (!conclusion->setup->loads)
         not_checked(out, "margins: they need both cards");
-    if (conclusion->setup->traction.law == FW_TRACTION_NONE)
+    if (conclusion->setup->traction.law == FW_TRACTION_SHEAR)
+        not_checked(out, "the pull after the slide, frame compliance, and what shears a post that "
+                         "stands alone in its layer");
+    else if (conclusion->setup->traction.law == FW_TRACTION_NONE)
         not_checked(out, job->machine.stiffness_N_mm > 0
                              ? "how a film or coating of the window gives: only the machine does"
                              : "frame compliance, and how a film or coating of the window gives: "
@@ -86,7 +89,9 @@ static void sum_up(const fw_conclusion *conclusion, fw_report *out)
         return;
     for (int end = 0; end < 2; end++) /* a measured law knows no gap */
         totals->peak_range_N[end] =
-            setup->traction.law == FW_TRACTION_NONE ? conclusion->range_N[end] : NAN;
+            setup->traction.law == FW_TRACTION_NONE || setup->traction.law == FW_TRACTION_SHEAR
+                ? conclusion->range_N[end]
+                : NAN;
     for (int32_t n = 0; n < setup->layers; n++) {
         const fw_layer_row *row = &out->layer[n];
         totals->capped_layers += row->limited_by == FW_BY_CAP;

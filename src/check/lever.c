@@ -261,7 +261,10 @@ static void load_group(fw_lever *lever, const fw_sheet *sheet, const fw_cluster 
     if (group == NULL || cluster->force_N == 0)
         return;
     double at[3], moved[6];
-    const double pull[6] = {0, 0, cluster->force_N, 0, 0, 0};
+    const double *slide = lever->setup->slide;
+    const bool along_z = slide[0] == 0 && slide[1] == 0;
+    const double pull[6] = {slide[0] * cluster->force_N, slide[1] * cluster->force_N,
+                            along_z ? cluster->force_N : 0};
     centre_of(lever->setup, cluster, at);
     at[2] = (sheet->layer + 1) * lever->setup->t_mm;
     fw_six_move_wrench(at, group->group.at, pull, moved);

@@ -33,6 +33,22 @@ static void set_law(fw_setup *setup, const fw_machine *machine)
     setup->cap_MPa = INFINITY;
 }
 
+/* Shear goes with 1 / h: q stands for that here. */
+static void set_shear(fw_setup *setup, const fw_resin *resin, const fw_machine *machine)
+{
+    const double angle = machine->slide_deg * acos(-1.0) / 180;
+    setup->traction =
+        (fw_traction){.law = FW_TRACTION_SHEAR,
+                      .area_MPa = fw_separation_shear_MPa(resin->viscosity_mPa_s,
+                                                          machine->speed_mm_s, machine->gap_um)};
+    setup->slide[0] = cos(angle);
+    setup->slide[1] = sin(angle);
+    setup->q = 1;
+    for (int end = 0; end < 2; end++)
+        setup->q_range[end] = machine->gap_um / machine->gap_range_um[end];
+    setup->cap_MPa = INFINITY;
+}
+
 static void set_liquid(fw_setup *setup, const fw_resin *resin, const fw_machine *machine)
 {
     setup->q = fw_separation_q(resin->viscosity_mPa_s, machine->speed_mm_s, machine->gap_um);
@@ -48,6 +64,8 @@ static void set_loads(fw_setup *setup, const fw_job *job)
     const fw_machine *machine = &job->machine;
     if (machine->mode == FW_MODE_FILM || machine->mode == FW_MODE_MEASURED)
         set_law(setup, machine);
+    else if (machine->mode == FW_MODE_SLIDE)
+        set_shear(setup, &job->resin, machine);
     else
         set_liquid(setup, &job->resin, machine);
     setup->unsolved_N = unsolved_below(job);

@@ -27,6 +27,7 @@ typedef struct fw_setup {
     double smallest_tip_mm; /* 0 without post rules */
     bool loads;             /* both cards are there: peel loads and margins can be computed */
     fw_traction traction;   /* a measured law; then q is 1 MPa/mm2 and nothing is capped */
+    double slide[2];        /* direction of the pull in the plane; 0, 0: along z */
     double q;               /* 12 eta v / h^3, MPa/mm2, at the card's gap */
     fw_film_plane faster; /* how the speed differs over the image, from its first pixel's corner */
     double q_range[2];    /* at the narrow and at the wide end of the gap range */

@@ -306,7 +306,9 @@ fw_status fw_share_step(fw_share *share, fw_sheet *sheet, const fw_sheet *before
     FW_TRY(step_tributary(share, sheet, before, fault));
     taking now = {share, sheet->layer};
     const fw_load_taker taker = {take_anchor, take_post, &now};
-    FW_TRY(fw_loads_hand_out(share->setup, sheet, share->tributary, &share->loads, &taker, fault));
+    if (share->setup->traction.law != FW_TRACTION_SHEAR) /* no share by nearness sideways */
+        FW_TRY(
+            fw_loads_hand_out(share->setup, sheet, share->tributary, &share->loads, &taker, fault));
     FW_TRY(book_posts(share, sheet, rows, fault));
     book_plates(share, sheet->layer, rows);
     return fw_lever_share(share, sheet, &rows[sheet->layer], fault);

@@ -41,9 +41,16 @@ fw_status fw_speed_caps(const fw_conclusion *conclusion, fw_report *out, fw_faul
     for (int32_t n = 0; n < out->layers; n++) {
         fw_layer_row *row = &out->layer[n];
         row->speed_cap_mm_s = NAN;
-        if (!setup->loads || setup->traction.law != FW_TRACTION_NONE || !(row->peel_N > 0))
+        const bool shear = setup->traction.law == FW_TRACTION_SHEAR;
+        const bool known = setup->traction.law == FW_TRACTION_NONE || shear;
+        if (!setup->loads || !known || !(row->peel_N > 0))
             continue;
         const double most_N = allowed_N(job, row);
+        if (shear && !isnan(most_N)) {
+            row->speed_cap_mm_s =
+                fmin(FW_SPEED_MOST, job->machine.speed_mm_s * most_N / row->peel_N);
+            continue;
+        }
         const bool slower_at_the_cap = row->limited_by == FW_BY_CAP && most_N < row->peel_N;
         if (isnan(most_N) || slower_at_the_cap)
             continue;

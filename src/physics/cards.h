@@ -39,6 +39,7 @@ typedef enum fw_mode {
     FW_MODE_TILT,     /* it turns about a hinge line */
     FW_MODE_FILM,     /* a tensioned film peels off from the rim: a law in area and rim */
     FW_MODE_MEASURED, /* force against area, measured */
+    FW_MODE_SLIDE,    /* the window slides away sideways and shears the film */
 } fw_mode;
 
 typedef struct fw_machine {
@@ -46,6 +47,7 @@ typedef struct fw_machine {
     fw_basis basis_separation, basis_frame;
     fw_mode mode;
     double speed_mm_s;  /* separation speed, at the plate's centre */
+    double slide_deg;   /* slide: direction of the pull in the plane, from x toward y */
     fw_points hinge_mm; /* tilt: two points of the hinge line, in the stack's x, y */
     double area_kPa, rim_N_mm,
         front_mm;           /* film: per solid area, per open rim, within front_mm of it */

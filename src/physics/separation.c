@@ -7,6 +7,12 @@ double fw_separation_q(double viscosity_mPa_s, double speed_mm_s, double gap_um)
     return 12.0 * viscosity_mPa_s * speed_mm_s / (gap_um * gap_um * gap_um);
 }
 
+double fw_separation_shear_MPa(double viscosity_mPa_s, double speed_mm_s, double gap_um)
+{
+    /* mPa s * mm/s / um = 1e-3 * 1e-3 / 1e-6 Pa = 1 Pa */
+    return viscosity_mPa_s * speed_mm_s / gap_um * 1e-6;
+}
+
 double fw_separation_lever(const fw_machine *machine, double x_mm, double y_mm)
 {
     const double(*at)[2] = machine->hinge_mm.at;

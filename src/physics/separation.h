@@ -15,6 +15,10 @@
  * a negative q, that is pressure in place of suction. gap_um must be > 0. */
 double fw_separation_q(double viscosity_mPa_s, double speed_mm_s, double gap_um);
 
+/* Shear of the film under a window that slides: eta v / h in MPa (Couette; uniform film, Newtonian,
+ * edges left out, so h far below the width). */
+double fw_separation_shear_MPa(double viscosity_mPa_s, double speed_mm_s, double gap_um);
+
 /* Signed distance in mm of (x, y) mm from the hinge line, positive on the left of the way from its
  * first point to its second. hinge_mm must be two different points. */
 double fw_separation_lever(const fw_machine *machine, double x_mm, double y_mm);

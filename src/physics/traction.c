@@ -177,13 +177,14 @@ static fw_status find_loads(const fw_film_shape *shape, const fw_film_grid *grid
     const double unit = shape->px_mm * shape->px_mm;
     const uint32_t nodes = grid->cells + grid->cavities;
     const double area = total_mm2(grid, unit);
-    const bool film = traction->law == FW_TRACTION_FILM;
+    const bool table = traction->law == FW_TRACTION_TABLE;
     const double even_MPa =
-        film ? traction->area_MPa : fw_traction_table_N(traction->table, area) / area;
+        table ? fw_traction_table_N(traction->table, area) / area : traction->area_MPa;
     for (uint32_t i = 0; i < nodes; i++)
         load[i] =
-            grid->area[i] * unit * (film && i >= grid->cells ? traction->cavity_MPa : even_MPa);
-    return film ? load_rims(shape, grid, traction, load, fault) : FW_OK;
+            grid->area[i] * unit * (!table && i >= grid->cells ? traction->cavity_MPa : even_MPa);
+    return traction->law == FW_TRACTION_FILM ? load_rims(shape, grid, traction, load, fault)
+                                             : FW_OK;
 }
 
 static void fill(const fw_film_shape *shape, const fw_film_grid *grid, const double *load,

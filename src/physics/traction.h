@@ -11,6 +11,10 @@
  * Neither knows the gap, the viscosity or the speed: they hold for the machine, resin and settings
  * with which they were measured.
  *
+ * And one that is derived, since it has the same form:
+ *   shear  area_MPa on every solid area, sideways: the film between a layer and a window that
+ * slides (Couette flow, fw_separation_shear_MPa). Nothing on cavities: they are too deep.
+ *
  * The rim is measured on blocks: within one, the sides of a staircase count as the straight wall
  * across them (sqrt(l_x^2 + l_y^2)), since pixel faces alone are 27 % too long on a disc. Within 2
  * % on discs from 20 px radius on; a corner loses up to 0.6 of a block.
@@ -24,7 +28,8 @@
 typedef enum fw_traction_law {
     FW_TRACTION_NONE,
     FW_TRACTION_FILM,
-    FW_TRACTION_TABLE
+    FW_TRACTION_TABLE,
+    FW_TRACTION_SHEAR
 } fw_traction_law;
 
 typedef struct fw_traction {

@@ -394,8 +394,9 @@ static void refuses_bad_machines(void **state)
 {
     (void)state;
     static const bad_case bad[] = {
-        {"mode: pull", "mode: slide",
-         ":2: separation.mode: 'slide': this version computes pull, tilt, film and measured"},
+        {"mode: pull", "mode: shove", ":2: separation.mode: 'shove' is none of pull|tilt"},
+        {"mode: pull", "mode: slide, cap_kPa: 90", ":2: separation.cap_kPa: means nothing in mode"},
+        {"mode: pull", "mode: pull, slide_deg: 90", ":2: separation.slide_deg: means nothing in"},
         {"mode: pull", "mode: tilt", ":2: separation.mode: tilt needs hinge_mm"},
         {"speed_mm_s: 1.0, ", "", ":2: separation.mode: pull needs speed_mm_s"},
         {"gap_um: 100,", "", ":2: separation.mode: pull needs gap_um"},

@@ -215,6 +215,28 @@ static void an_arm_loads_by_its_lever(void **state)
     stage_free(&s);
 }
 
+/* A window that slides bends the post: the moment at its foot is force times height, and the
+ * anchor's own force is the slide's. */
+static void a_slide_bends_the_post(void **state)
+{
+    (void)state;
+    stage s = pulled_at(10, 10);
+    s.job.machine.mode = FW_MODE_SLIDE;
+    s.job.machine.speed_mm_s = 10;
+    s.job.machine.slide_deg = 90;
+    bench b;
+    bench_open(&b, &s);
+    const fw_post post = slender(10, 10);
+    assert_int_equal(fw_lever_add_post(&b.lever, &post, 0, 0, NULL), FW_OK);
+    const tally t = bench_step(&b);
+    const double f = b.sheet.peel.force_N;
+    assert_near(t.sum[1], f, 1e-9);
+    assert_true(fabs(t.sum[0]) < 1e-9 * f && fabs(t.sum[2]) < 1e-9 * f);
+    assert_near(fabs(t.sum[3]), f * 12, 1e-6); /* of the window's face, 120 layers of 0.1 mm */
+    bench_close(&b);
+    stage_free(&s);
+}
+
 /* A plate on one tall thin post, pushed on the way back: it buckles where it held the pull. */
 static void a_tall_post_buckles(void **state)
 {
@@ -247,6 +269,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(slender_posts_are_piles),   cmocka_unit_test(shares_are_in_balance),
         cmocka_unit_test(one_post_takes_the_moment), cmocka_unit_test(nodes_follow_the_post),
-        cmocka_unit_test(an_arm_loads_by_its_lever), cmocka_unit_test(a_tall_post_buckles)};
+        cmocka_unit_test(an_arm_loads_by_its_lever), cmocka_unit_test(a_slide_bends_the_post),
+        cmocka_unit_test(a_tall_post_buckles)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

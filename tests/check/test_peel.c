@@ -477,6 +477,27 @@ static void the_way_back_pushes(void **state)
     layer_free(&still);
 }
 
+/* Couette: R = 10 mm, 0.5 Pa s, 10 mm/s, 50 um: 0.0314159265 N, by its area alone; with 1 / gap
+ * over the range. */
+static void a_window_that_slides(void **state)
+{
+    (void)state;
+    layer l = disc(100, 100, 0);
+    fw_machine *machine = &l.stage.job.machine;
+    machine->mode = FW_MODE_SLIDE;
+    machine->speed_mm_s = 10;
+    machine->gap_um = 50;
+    machine->gap_range_um[0] = 25;
+    machine->gap_range_um[1] = 200;
+    solve(&l, OPEN_HOLES);
+    assert_near(l.peel.force_N, 0.0314159265 * area_of(&l) / (pi * 100), 1e-8);
+    assert_near(l.peel.force_N, 0.0314159265, 2e-3);
+    assert_int_equal(fw_peel_range(&l.setup, l.memo, &l.peel, NULL), FW_OK);
+    assert_near(l.peel.range_N[0], 2 * l.peel.force_N, 1e-9);
+    assert_near(l.peel.range_N[1], l.peel.force_N / 4, 1e-9);
+    layer_free(&l);
+}
+
 /* A spring for all: two discs pull less than twice as much as one. */
 static void one_spring_for_the_layer(void **state)
 {
@@ -527,6 +548,7 @@ int main(void)
                                        cmocka_unit_test(a_frame_gives),
                                        cmocka_unit_test(a_frame_gives_under_the_cap),
                                        cmocka_unit_test(one_spring_for_the_layer),
+                                       cmocka_unit_test(a_window_that_slides),
                                        cmocka_unit_test(the_way_back_pushes),
                                        cmocka_unit_test(measured_laws),
                                        cmocka_unit_test(a_plate_that_tilts),

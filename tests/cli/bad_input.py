@@ -51,8 +51,8 @@ class Job(Sandbox):
         self.write("resin.yaml", stage.RESIN.replace("exposure_mJ_cm2: 38", "exposure_mJ_cm2: 10"))
         self.refused(2, "cannot cure", "survey", "raw", "--job", "job.yaml")
         self.write("resin.yaml", stage.RESIN)
-        self.write("machine.yaml", stage.MACHINE.replace("mode: pull", "mode: slide"))
-        self.refused(2, "pull", "survey", "raw", "--job", "job.yaml")
+        self.write("machine.yaml", stage.MACHINE.replace("mode: pull", "mode: shove"))
+        self.refused(2, "none of pull|tilt", "survey", "raw", "--job", "job.yaml")
         self.write("machine.yaml", stage.MACHINE.replace("mode: pull", "mode: tilt"))
         self.refused(2, "hinge_mm", "survey", "raw", "--job", "job.yaml")
         across = "mode: tilt, hinge_mm: [[0.5, 0], [0.5, 9]]"
