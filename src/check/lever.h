@@ -7,7 +7,7 @@
  * Poisson's ratio 0.4: green acrylates, common practice, no source); contacts of the part with the
  * plate are patches as stiff as the first layer under them. A part that bends puts more on the
  * anchors under the load than said here: the tributary share is the other bound, and the larger of
- * the two counts. A post takes part from the layer in which its contact is known on. */
+ * the two counts. A post takes part from the first layer on in which part lies over its end. */
 #ifndef FW_CHECK_LEVER_H
 #define FW_CHECK_LEVER_H
 

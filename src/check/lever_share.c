@@ -57,7 +57,9 @@ static fw_status take_post(const booking *now, int32_t index, const double force
                            fw_fault *fault)
 {
     fw_post_account *account = &now->share->post[index];
-    const double area = account->section.area_mm2[FW_POST_TIP];
+    const double tip_mm = now->share->posts->item[index].tip_mm;
+    const double drawn = acos(-1.0) / 4 * tip_mm * tip_mm;
+    const double area = account->contact_known ? account->section.area_mm2[FW_POST_TIP] : drawn;
     if (force[2] < 0)
         fw_share_push(account, -force[2]);
     else

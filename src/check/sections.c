@@ -147,7 +147,7 @@ static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t
     fw_runs contact = {0};
     if (account->end.height == 0)
         return FW_OK; /* nothing of its last section is solid: it holds nothing */
-    fw_status status =
+    const fw_status status =
         fw_runs_intersect(&account->end, fw_slice_solid(&sheet->slice), &contact, fault);
     if (status == FW_OK) {
         shrink(&account->section.area_mm2[FW_POST_TIP],
@@ -155,19 +155,30 @@ static fw_status measure_contact(fw_share *share, const fw_sheet *sheet, int32_t
         account->contact_known = true;
         fw_share_settle(share, index, rows);
     }
-    if (status == FW_OK && contact.count > 0) {
-        int32_t y = 0;
-        while (contact.row[y + 1] == 0)
-            y++;
-        const uint32_t run = fw_runs_find(fw_sheet_part(sheet), contact.run[0].x0, y);
-        if (run != UINT32_MAX)
-            account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
-    }
-    if (status == FW_OK && account->part >= 0)
-        status = fw_lever_add_post(&share->lever, &share->posts->item[index], index,
-                                   (uint32_t)account->part, fault);
     fw_runs_free(&account->end);
     fw_runs_free(&contact);
+    return status;
+}
+
+/* From the first layer in which part lies over its end on, a post holds that part, whatever of the
+ * bite is still to come. */
+static fw_status attach(fw_share *share, const fw_sheet *sheet, int32_t index, fw_fault *fault)
+{
+    fw_post_account *account = &share->post[index];
+    fw_runs over = {0};
+    if (account->end.height == 0)
+        return FW_OK;
+    fw_status status = fw_runs_intersect(&account->end, fw_sheet_part(sheet), &over, fault);
+    if (status == FW_OK && over.count > 0) {
+        int32_t y = 0;
+        while (over.row[y + 1] == 0)
+            y++;
+        const uint32_t run = fw_runs_find(fw_sheet_part(sheet), over.run[0].x0, y);
+        account->part = (int32_t)sheet->part_body[fw_sheet_part_regions(sheet)->label[run]];
+        status = fw_lever_add_post(&share->lever, &share->posts->item[index], index,
+                                   (uint32_t)account->part, fault);
+    }
+    fw_runs_free(&over);
     return status;
 }
 
@@ -187,6 +198,9 @@ static fw_status measure_contacts(fw_share *share, const fw_sheet *sheet, fw_lay
     for (size_t p = 0; p < share->posts->count; p++) {
         const fw_post *post = &share->posts->item[p];
         const bool within = post->routed && post->tip_layer < share->setup->layers;
+        const bool near = post->tip_layer <= sheet->layer && sheet->layer <= end_layer(share, post);
+        if (within && near && share->post[p].part < 0)
+            FW_TRY(attach(share, sheet, (int32_t)p, fault));
         if (within && end_layer(share, post) == sheet->layer)
             FW_TRY(measure_contact(share, sheet, (int32_t)p, rows, fault));
     }

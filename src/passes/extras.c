@@ -14,14 +14,13 @@ static double disc_mm2(double diameter_mm)
     return acos(-1.0) / 4 * diameter_mm * diameter_mm;
 }
 
-/* How many posts of the largest size the load of this one needs, less itself. */
+/* How many posts of the largest size the load of this one by nearness needs, less itself. Where it
+ * is lever action that overloads it, one more at a time: what counts is where the others stand. */
 static size_t more_for(const fw_sizing *sizing, size_t index)
 {
     const fw_post_rules *rules = &sizing->job->rules;
     const fw_resin *resin = &sizing->job->resin;
-    fw_post_demand demand;
-    fw_share_demand(fw_judge_share(sizing->judge), index, &demand);
-    const double *load = demand.load_N;
+    const double *load = fw_judge_share(sizing->judge)->post[index].demand.load_N;
     const double tip = fw_strength_tension_N(resin->tensile_MPa, disc_mm2(rules->tip_mm[1]));
     const double foot = fw_strength_adhesion_N(resin->plate_adhesion_MPa, disc_mm2(rules->foot_mm));
     const double share = fmax(load[FW_POST_TIP] / tip, load[FW_POST_FOOT] / foot) * rules->margin;
