@@ -16,7 +16,8 @@ from pathlib import Path
 DIRECT = {
     "fault": [], "findings": ["fault"], "mask": ["fault"], "physics": ["mask", "findings"],
     "posts": ["physics"], "check": ["posts"], "stack": ["mask"], "cards": ["check"],
-    "report": ["check"], "passes": ["cards", "report", "stack"], "cli": [],
+    "report": ["check"], "calibrate": ["stack", "cards"],
+    "passes": ["cards", "report", "stack", "calibrate"], "cli": [],
 }
 PUBLIC = {"passes", "cli"}  # the rooms that may include falsework/*.h
 LONGEST = 600
