@@ -24,9 +24,9 @@ static const option_row options[] = {
     {"--raw", FW_TAKES_RECHECK, WORD, AT(raw), 0, 0},
     {"--resin", FW_TAKES_RECHECK, WORD, AT(resin), 0, 0},
     {"--machine", FW_TAKES_RECHECK, WORD, AT(machine), 0, 0},
-    {"--json", FW_TAKES_RUN, FLAG, AT(json), 0, 0},
+    {"--json", FW_TAKES_RUN | FW_TAKES_PROVE, FLAG, AT(json), 0, 0},
     {"--verbose", FW_TAKES_RUN, FLAG, AT(verbose), 0, 0},
-    {"--threads", FW_TAKES_RUN, NUMBER, AT(threads), 1, 1024},
+    {"--threads", FW_TAKES_RUN | FW_TAKES_PROVE, NUMBER, AT(threads), 1, 1024},
     {"--batch", FW_TAKES_RUN, NUMBER, AT(batch), 1, 1024},
     {"--memo-mib", FW_TAKES_RUN, NUMBER, AT(memo_MiB), 0, 65536},
     {"--store-mib", FW_TAKES_RUN, NUMBER, AT(store_MiB), 0, 65536},
@@ -87,6 +87,10 @@ static bool take_word(const fw_command *command, const char *word, fw_arguments 
         fw_say("unknown option %s, command line, see falsework %s --help", word, command->name);
         return false;
     }
+    if ((command->takes & FW_TAKES_PROVE) != 0) {
+        fw_say("\"%s\" is too much, command line, %s takes no stack", word, command->name);
+        return false;
+    }
     if (out->stack != NULL) {
         fw_say("more than one stack (\"%s\", \"%s\"), command line, give one folder", out->stack,
                word);
@@ -99,7 +103,7 @@ static bool take_word(const fw_command *command, const char *word, fw_arguments 
 static bool complete(const fw_command *command, const fw_arguments *out)
 {
     const char *missing = NULL;
-    if (out->stack == NULL)
+    if (out->stack == NULL && (command->takes & FW_TAKES_PROVE) == 0)
         missing = "the stack (a folder of masks)";
     else if ((command->takes & FW_NEEDS_JOB) != 0 && out->job == NULL)
         missing = "--job JOB.yaml";

@@ -24,6 +24,7 @@ enum {
     FW_TAKES_REPLACE = 1 << 4,
     FW_TAKES_RECHECK = 1 << 5, /* --posts --raw --resin --machine */
     FW_TAKES_RUN = 1 << 6,     /* --json --threads --batch --memo-mib --store-mib --verbose */
+    FW_TAKES_PROVE = 1 << 7,   /* --json --threads, and no stack */
 };
 
 typedef struct fw_command {

@@ -8,5 +8,6 @@ extern const fw_command fw_command_begin;
 extern const fw_command fw_command_survey;
 extern const fw_command fw_command_prop;
 extern const fw_command fw_command_recheck;
+extern const fw_command fw_command_prove;
 
 #endif

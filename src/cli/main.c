@@ -9,7 +9,8 @@
 #endif
 
 static const fw_command *const commands[] = {&fw_command_begin, &fw_command_survey,
-                                             &fw_command_prop, &fw_command_recheck};
+                                             &fw_command_prop, &fw_command_recheck,
+                                             &fw_command_prove};
 enum { COMMANDS = sizeof commands / sizeof *commands };
 
 static int print_help(void)
@@ -21,7 +22,8 @@ static int print_help(void)
     for (size_t i = 0; i < COMMANDS; i++)
         (void)printf("  falsework %-8s %s\n", commands[i]->name, commands[i]->one_line);
     (void)printf("\nfalsework COMMAND --help tells more. Exit status: 0 done and the gate holds, 1 "
-                 "the gate\nrefuses, 2 bad usage, job, card or stack, 3 the machine failed us.\n");
+                 "the gate\nrefuses or a check fails, 2 bad usage, job, card or stack, 3 the "
+                 "machine failed us.\n");
     return fw_say_done(FALSEWORK_OK);
 }
 
