@@ -3,6 +3,7 @@
 #include "calibrate/figure.h"
 #include "calibrate/laws.h"
 #include "calibrate/proofs.h"
+#include "physics/separation.h"
 
 #include <math.h>
 
@@ -82,6 +83,15 @@ static fw_status strip(const fw_proof *proof, double *computed, fw_fault *fault)
     return FW_OK;
 }
 
+/* 0.5 Pa s over the disc's own area. */
+static fw_status slide_N(const fw_proof *proof, double *computed, fw_fault *fault)
+{
+    (void)proof;
+    (void)fault;
+    computed[0] = fw_separation_shear_MPa(500, 10, 50) * FW_PI * 100;
+    return FW_OK;
+}
+
 /* Highest suction of the hinged strip, across 640 px and half way along, where the ends count for
  * exp(-5 pi). */
 static fw_status strip_peak(const fw_proof *proof, double *computed, fw_fault *fault)
@@ -147,8 +157,8 @@ static fw_status rocking_square(const fw_proof *proof, double *computed, fw_faul
 #define ROCK "derived here from Reynolds 1886"
 
 static const fw_proof rows[] = {
-    FW_NOT_COMPUTED("T1", "plate that slides, R 10 mm, 10 mm/s, 50 um: F, N",
-                    "no kernel for a vat that slides: machines pull or tilt here"),
+    FW_CHECK("T1", "window that slides, R 10 mm, 10 mm/s, 50 um: F, N", FW_EQUAL(0.01 * FW_PI),
+             1e-9, "Couette; force is shear times area", FW_BY(slide_N, 0)),
     FW_CHECK("T2.1", "strip hinged at its edge, limit of cells: F', M'", FW_EQUAL(0.5, 4.0 / 15),
              1e-5, ROCK, FW_BY(strip, 0, 0)),
     FW_CHECK("T2.2", "the same, 640 cells: highest suction", FW_EQUAL(0.769800), 1e-5, ROCK,
