@@ -332,14 +332,7 @@ static place first_place(const fw_sheet *sheet, const fw_cluster *cluster)
  * between. UINT32_MAX: there is none on that side. */
 static void walls_beside(const fw_runs *solid, fw_run gap, int32_t y, uint32_t run[2], int32_t x[2])
 {
-    uint32_t low = solid->row[y], high = solid->row[y + 1];
-    while (low < high) {
-        const uint32_t middle = low + (high - low) / 2;
-        if (solid->run[middle].x0 < gap.x1)
-            low = middle + 1;
-        else
-            high = middle;
-    }
+    const uint32_t low = fw_runs_seek(solid, gap.x0, y);
     run[0] = low > solid->row[y] ? low - 1 : UINT32_MAX;
     run[1] = low < solid->row[y + 1] ? low : UINT32_MAX;
     x[0] = run[0] != UINT32_MAX ? solid->run[run[0]].x1 - 1 : 0;

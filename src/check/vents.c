@@ -172,14 +172,7 @@ static fw_status pick_voids(const fw_sheet *sheet, bool sealed, fw_runs *out, fw
 static bool touches(const fw_runs *set, fw_run run, int32_t y)
 {
     for (int32_t row = y > 0 ? y - 1 : 0; row <= y + 1 && row < set->height; row++) {
-        uint32_t low = set->row[row], high = set->row[row + 1];
-        while (low < high) {
-            const uint32_t middle = low + (high - low) / 2;
-            if (set->run[middle].x1 < run.x0)
-                low = middle + 1;
-            else
-                high = middle;
-        }
+        const uint32_t low = fw_runs_seek(set, run.x0 - 1, row);
         if (low < set->row[row + 1] && set->run[low].x0 <= run.x1)
             return true;
     }
@@ -288,14 +281,7 @@ static fw_status unite(const fw_vents *vents, fw_sheet *sheet, const fw_runs *cu
 static void name(fw_sheet *sheet, fw_run run, int32_t y, uint32_t body)
 {
     const fw_runs *shut = &sheet->shut;
-    uint32_t low = shut->row[y], high = shut->row[y + 1];
-    while (low < high) {
-        const uint32_t middle = low + (high - low) / 2;
-        if (shut->run[middle].x1 <= run.x0)
-            low = middle + 1;
-        else
-            high = middle;
-    }
+    uint32_t low = fw_runs_seek(shut, run.x0, y);
     for (; low < shut->row[y + 1] && shut->run[low].x0 < run.x1; low++) {
         uint32_t *is = &sheet->shut_body[sheet->shut_regions.label[low]];
         *is = body < *is ? body : *is;

@@ -103,10 +103,8 @@ bool fw_runs_equal(const fw_runs *a, const fw_runs *b)
            memcmp(a->run, b->run, a->count * sizeof *a->run) == 0;
 }
 
-uint32_t fw_runs_find(const fw_runs *set, int32_t x, int32_t y)
+uint32_t fw_runs_seek(const fw_runs *set, int32_t x, int32_t y)
 {
-    if (y < 0 || y >= set->height)
-        return UINT32_MAX;
     uint32_t low = set->row[y], high = set->row[y + 1];
     while (low < high) {
         uint32_t middle = low + (high - low) / 2;
@@ -115,8 +113,16 @@ uint32_t fw_runs_find(const fw_runs *set, int32_t x, int32_t y)
         else
             high = middle;
     }
-    bool inside = low < set->row[y + 1] && set->run[low].x0 <= x;
-    return inside ? low : UINT32_MAX;
+    return low;
+}
+
+uint32_t fw_runs_find(const fw_runs *set, int32_t x, int32_t y)
+{
+    if (y < 0 || y >= set->height)
+        return UINT32_MAX;
+    uint32_t run = fw_runs_seek(set, x, y);
+    bool inside = run < set->row[y + 1] && set->run[run].x0 <= x;
+    return inside ? run : UINT32_MAX;
 }
 
 fw_status fw_runs_complement(const fw_runs *a, fw_runs *out, fw_fault *fault)

@@ -39,6 +39,9 @@ bool fw_runs_valid(const fw_runs *set);
 int64_t fw_runs_pixels(const fw_runs *set);
 bool fw_runs_equal(const fw_runs *a, const fw_runs *b);
 
+/* The first run of row y (inside the image) that ends after x, or row[y + 1]. */
+uint32_t fw_runs_seek(const fw_runs *set, int32_t x, int32_t y);
+
 /* The run that holds (x, y), or UINT32_MAX. Coordinates outside the image are allowed. */
 uint32_t fw_runs_find(const fw_runs *set, int32_t x, int32_t y);
 
