@@ -22,6 +22,9 @@ static void book(const booking *now, int32_t post, fw_post_check check, double p
     fw_post_account *account = &now->share->post[post];
     if (!(pull_N > 0))
         return;
+    const double most = fmax(account->lever_N[check], account->demand.load_N[check]);
+    if (check == FW_POST_TIP && pull_N > most)
+        account->load_layer = now->row->layer;
     account->lever_N[check] = fmax(account->lever_N[check], pull_N);
     now->row->worst_margin =
         fmin(now->row->worst_margin, fw_margin_of(&now->share->setup->job->resin, check,

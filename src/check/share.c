@@ -169,7 +169,8 @@ static void raise_demand(fw_post_account *account, int32_t layer)
     double *load = account->demand.load_N;
     if (account->tip_N > load[FW_POST_TIP]) {
         load[FW_POST_TIP] = account->tip_N;
-        account->load_layer = layer;
+        account->load_layer =
+            account->tip_N > account->lever_N[FW_POST_TIP] ? layer : account->load_layer;
     }
     const double below = account->tip_N + account->own_N;
     for (int check = FW_POST_NECK; check < FW_POST_CHECKS; check++)
