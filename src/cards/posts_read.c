@@ -207,11 +207,11 @@ static fw_status check_results(const place *at, json_t *object)
     FW_TRY(check_result(at, object, "contact_mm2"));
     FW_TRY(check_result(at, object, "margin"));
     const char *governs = json_string_value(json_object_get(object, "governs"));
-    for (int check = FW_CHECK_NONE; check <= FW_CHECK_FOOT; check++) {
+    for (int check = FW_CHECK_NONE; check <= FW_CHECK_BUCKLING; check++) {
         if (governs != NULL && strcmp(governs, fw_check_name((fw_check)check)) == 0)
             return FW_OK;
     }
-    return refuse(at, "governs", "expects none, tip, neck, shaft or foot");
+    return refuse(at, "governs", "expects none, tip, neck, shaft, foot or buckling");
 }
 
 /* Ids only rise through the file, so that none stands twice; the post's own is its position. */
