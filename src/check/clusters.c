@@ -300,40 +300,64 @@ static fw_status push_row(const fw_slice *slice, const fw_openings *openings, in
     return FW_OK;
 }
 
-/* Some film pixel at the end of a run, or over or under one, is neither film nor sealed. */
-static bool has_open_edge(const fw_film_shape *shape)
+/* Whether all pixels [x0, x1) of row y are film or sealed; outside of the box is the vat. */
+static bool is_closed(const fw_film_shape *shape, int32_t x0, int32_t x1, int32_t y)
 {
     const fw_runs *film = &shape->film, *sealed = &shape->sealed;
+    for (int32_t x = x0; x < x1;) {
+        const uint32_t in_film = fw_runs_find(film, x, y), in_sealed = fw_runs_find(sealed, x, y);
+        if (in_film == UINT32_MAX && in_sealed == UINT32_MAX)
+            return false;
+        x = in_film != UINT32_MAX ? film->run[in_film].x1 : sealed->run[in_sealed].x1;
+    }
+    return true;
+}
+
+/* Some film pixel has a side toward the vat. Mostly the first run that is asked has. */
+static bool has_open_edge(const fw_film_shape *shape)
+{
+    const fw_runs *film = &shape->film;
     for (int32_t y = 0; y < film->height; y++) {
         for (uint32_t i = film->row[y]; i < film->row[y + 1]; i++) {
             const fw_run r = film->run[i];
-            if (fw_runs_find(sealed, r.x0 - 1, y) == UINT32_MAX ||
-                fw_runs_find(sealed, r.x1, y) == UINT32_MAX)
+            if (!is_closed(shape, r.x0 - 1, r.x1 + 1, y) || !is_closed(shape, r.x0, r.x1, y - 1) ||
+                !is_closed(shape, r.x0, r.x1, y + 1))
                 return true;
         }
     }
     return false;
 }
 
-/* A film that borders on nothing but poor vents has no way to the vat, since vents are no part of
- * the film: there they count as open after all. */
-static void open_vents(const fw_openings *openings, uint32_t index, fw_peel *out, fw_fault *fault)
+/* Leaves out the cavities of one cluster that are sealed by poor vents alone, and numbers the
+ * others anew in their order. */
+static fw_status open_vents(const fw_openings *openings, uint32_t index, fw_peel *out,
+                            fw_fault *fault)
 {
     fw_cluster *cluster = &out->cluster[index];
-    const fw_runs *film = &cluster->shape.film;
+    uint32_t *number = NULL;
+    FW_TRY(fw_allocate((void **)&number, cluster->cavity_count, sizeof *number, holder, fault));
+    for (uint32_t k = 0; k < cluster->cavity_count; k++)
+        number[k] = UINT32_MAX;
+    cluster->cavity_count = 0;
     for (uint32_t v = 0; v < openings->regions->count; v++) {
-        if (out->of_void[v] == index)
-            out->of_void[v] = out->cavity_of[v] = UINT32_MAX;
+        if (out->of_void[v] != index)
+            continue;
+        uint32_t *cavity = &out->cavity_of[v];
+        if (openings->sealed[v] >= openings->poor_from)
+            out->of_void[v] = *cavity = UINT32_MAX;
+        if (*cavity == UINT32_MAX)
+            continue;
+        if (number[*cavity] == UINT32_MAX)
+            number[*cavity] = cluster->cavity_count++;
+        *cavity = number[*cavity];
     }
-    (void)fw_runs_begin(&cluster->shape.sealed, film->width, film->height,
-                        fault); /* has the rows */
-    fw_runs_finish(&cluster->shape.sealed);
-    cluster->shape.cavity_count = cluster->cavity_count = 0;
+    free(number);
+    return FW_OK;
 }
 
-fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
-                            const fw_openings *openings, const uint8_t *wanted, fw_peel *out,
-                            fw_fault *fault)
+static fw_status draw_shapes(const fw_setup *setup, const fw_slice *slice,
+                             const fw_openings *openings, const uint8_t *wanted, fw_peel *out,
+                             fw_fault *fault)
 {
     for (uint32_t c = 0; c < out->count; c++) {
         if (wanted[c])
@@ -345,9 +369,25 @@ fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
         if (wanted[c]) {
             fw_runs_finish(&out->cluster[c].shape.film);
             fw_runs_finish(&out->cluster[c].shape.sealed);
-            if (out->cluster[c].cavity_count > 0 && !has_open_edge(&out->cluster[c].shape))
-                open_vents(openings, c, out, fault);
         }
     }
     return FW_OK;
+}
+
+/* A film that borders on nothing but poor vents has no way to the vat in the film equation, since
+ * the narrow ways are no part of the film: there the vents count as open after all. */
+fw_status fw_clusters_shape(const fw_setup *setup, const fw_slice *slice,
+                            const fw_openings *openings, const uint8_t *wanted, fw_peel *out,
+                            fw_fault *fault)
+{
+    bool opened = false;
+    FW_TRY(draw_shapes(setup, slice, openings, wanted, out, fault));
+    for (uint32_t c = 0; c < out->count && openings->poor_from > 0; c++) {
+        const fw_cluster *cluster = &out->cluster[c];
+        if (!wanted[c] || cluster->cavity_count == 0 || has_open_edge(&cluster->shape))
+            continue;
+        FW_TRY(open_vents(openings, c, out, fault));
+        opened = true;
+    }
+    return opened ? draw_shapes(setup, slice, openings, wanted, out, fault) : FW_OK;
 }

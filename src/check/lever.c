@@ -111,6 +111,21 @@ static fw_patch patch_of(const fw_setup *setup, const fw_runs *contact)
                       .ixy_mm4 = xy - area * x * y};
 }
 
+/* Distances of the pixels furthest from the patch's centroid, along x and y. */
+static void find_rim(const fw_setup *setup, const fw_runs *contact, const fw_patch *patch,
+                     double far_mm[2])
+{
+    const double px = setup->px_mm, py = setup->py_mm;
+    far_mm[0] = far_mm[1] = 0;
+    for (int32_t y = 0; y < contact->height; y++) {
+        for (uint32_t i = contact->row[y]; i < contact->row[y + 1]; i++) {
+            const fw_run r = contact->run[i];
+            far_mm[0] = fmax(far_mm[0], fmax(patch->at[0] - r.x0 * px, r.x1 * px - patch->at[0]));
+            far_mm[1] = fmax(far_mm[1], fmax(patch->at[1] - y * py, (y + 1) * py - patch->at[1]));
+        }
+    }
+}
+
 fw_status fw_lever_add_plate(fw_lever *lever, const fw_runs *contact, int32_t index, uint32_t part,
                              fw_fault *fault)
 {
@@ -118,19 +133,11 @@ fw_status fw_lever_add_plate(fw_lever *lever, const fw_runs *contact, int32_t in
     const double e = lever->setup->job->resin.modulus_MPa, t = lever->setup->t_mm;
     if (fw_runs_pixels(contact) < 2)
         return FW_OK;
+    double far_mm[2];
     const fw_patch patch = patch_of(lever->setup, contact);
-    const double half_px = lever->setup->px_mm / 2, half_py = lever->setup->py_mm / 2;
-    double far_x = 0, far_y = 0;
-    for (int32_t y = 0; y < contact->height; y++) {
-        for (uint32_t i = contact->row[y]; i < contact->row[y + 1]; i++) {
-            const double left = contact->run[i].x0 * 2 * half_px,
-                         right = contact->run[i].x1 * 2 * half_px;
-            far_x = fmax(far_x, fmax(patch.at[0] - left, right - patch.at[0]));
-            far_y = fmax(far_y, fabs((2 * y + 1) * half_py - patch.at[1]) + half_py);
-        }
-    }
-    anchor.over_ixx = far_y / patch.ixx_mm4;
-    anchor.over_iyy = far_x / patch.iyy_mm4;
+    find_rim(lever->setup, contact, &patch, far_mm);
+    anchor.over_ixx = far_mm[1] / patch.ixx_mm4;
+    anchor.over_iyy = far_mm[0] / patch.iyy_mm4;
     FW_TRY(fw_group_patch(&patch, e / t, e / (2 * (1 + poisson)) / t, &anchor.stiffness, fault));
     return add(lever, &anchor, fault);
 }

@@ -13,25 +13,11 @@ static place place_of_run(const fw_sheet *sheet, uint32_t run, int32_t x, int32_
     return (place){fw_slice_solid_regions(&sheet->slice)->label[run], x, y};
 }
 
-/* The first run of row y that ends after x, or the row's end. */
-static uint32_t first_after(const fw_runs *set, int32_t x, int32_t y)
-{
-    uint32_t low = set->row[y], high = set->row[y + 1];
-    while (low < high) {
-        const uint32_t middle = low + (high - low) / 2;
-        if (set->run[middle].x1 <= x)
-            low = middle + 1;
-        else
-            high = middle;
-    }
-    return low;
-}
-
 /* The run of row y that is nearest to x, or UINT32_MAX in an empty row. */
 static uint32_t nearest_run(const fw_runs *set, int32_t x, int32_t y)
 {
     const uint32_t first = set->row[y], end = set->row[y + 1];
-    const uint32_t low = first_after(set, x, y);
+    const uint32_t low = fw_runs_seek(set, x, y);
     if (low == end)
         return end > first ? end - 1 : UINT32_MAX;
     const bool left_is_nearer = low > first && x - set->run[low - 1].x1 + 1 < set->run[low].x0 - x;
@@ -172,7 +158,7 @@ static void look_at_row(sampling *now, int32_t block_x, int32_t y, int32_t n, ro
         return;
     if (cursor->y != y || block_x < cursor->x)
         *cursor = (row_cursor){
-            .x = -1, .y = y, .run = first_after(solid, block_x, y), .hint = cursor->hint};
+            .x = -1, .y = y, .run = fw_runs_seek(solid, block_x, y), .hint = cursor->hint};
     for (int32_t i = 0; i < n; i++) {
         const int32_t x = block_x + (2 * i + 1) * edge / (2 * n);
         if (x >= cursor->x1)

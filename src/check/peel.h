@@ -18,6 +18,7 @@ typedef struct fw_openings {
     const fw_runs *runs;
     const fw_regions *regions; /* of runs */
     const uint32_t *sealed;    /* [regions] body; UINT32_MAX = open */
+    uint32_t poor_from;        /* bodies from this id on are sealed by poor vents alone; 0: none */
 } fw_openings;
 
 typedef struct fw_cluster {

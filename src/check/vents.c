@@ -342,13 +342,14 @@ static fw_status shut(const fw_vents *vents, fw_sheet *sheet, const fw_runs *cut
     FW_TRY(fw_grow((void **)&sheet->shut_body, &sheet->shut_capacity,
                    (size_t)sheet->shut_regions.count + 1, sizeof *sheet->shut_body, holder, fault));
     name_bodies(vents, sheet, cut_off);
-    sheet->openings = (fw_openings){&sheet->shut, &sheet->shut_regions, sheet->shut_body};
+    sheet->openings = (fw_openings){&sheet->shut, &sheet->shut_regions, sheet->shut_body, POOR};
     return note_poor(vents->setup, sheet, findings, fault);
 }
 
 fw_status fw_vents_step(fw_vents *vents, fw_sheet *sheet, fw_findings *findings, fw_fault *fault)
 {
-    sheet->openings = (fw_openings){&sheet->slice.voids, &sheet->slice.void_regions, sheet->cavity};
+    sheet->openings =
+        (fw_openings){&sheet->slice.voids, &sheet->slice.void_regions, sheet->cavity, 0};
     if (vents->setup->vent_mm == 0)
         return FW_OK;
     fw_runs cut_off = {0};

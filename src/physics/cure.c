@@ -116,11 +116,6 @@ void fw_cure_column_add(fw_cure_column *column, double share, double through)
     column->light *= through;
 }
 
-double fw_cure_dose_before(const fw_resin *resin, double later_mJ_cm2, double share, double through)
-{
-    return share * resin->exposure_mJ_cm2 + through * later_mJ_cm2;
-}
-
 double fw_cure_green(const fw_points *measured, double critical_mJ_cm2, double dose_mJ_cm2)
 {
     const int last = measured->count - 1;

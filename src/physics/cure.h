@@ -75,13 +75,6 @@ fw_cure_column fw_cure_column_begin(const fw_resin *resin, double depth_um);
  * and liquid, and what was dark lets through as much as what was lit. */
 void fw_cure_column_add(fw_cure_column *column, double share, double through);
 
-/* The same from the last layer back to the first, one number for all depths: with E' = share E0 + r
- * E after layer n, a point depth um from the window in layer n ends with E' exp(-depth / Dp). Begin
- * with 0. In print order this recurrence would weight the wrong layers; with equal shares nobody
- * would see it. */
-double fw_cure_dose_before(const fw_resin *resin, double later_mJ_cm2, double share,
-                           double through);
-
 /* A green property (tensile strength, modulus) at a dose, from what was measured: pairs {dose
  * mJ/cm2, value}, doses rising, all above Ec. Linear in ln(E / Ec) between the pairs; the largest
  * dose's value above, never more; from the smallest measured dose down to 0 at Ec, where the gel

@@ -43,7 +43,7 @@ static void scene_set(scene *c, double pixel_um, uint32_t first, uint32_t second
     c->sealed[1] = first;
     c->sealed[2] = second;
     c->sealed[3] = third;
-    c->openings = (fw_openings){&c->slice.voids, &c->slice.void_regions, c->sealed};
+    c->openings = (fw_openings){&c->slice.voids, &c->slice.void_regions, c->sealed, 0};
     assert_int_equal(fw_slice_solid_regions(&c->slice)->count, 5);
     assert_int_equal(c->slice.void_regions.count, 4);
 }

@@ -50,7 +50,7 @@ static void bench_open(bench *b, const stage *s)
     for (uint32_t v = 0; v < b->sheet.slice.void_regions.count; v++)
         b->sheet.cavity[v] = FW_OPEN;
     b->sheet.openings =
-        (fw_openings){&b->sheet.slice.voids, &b->sheet.slice.void_regions, b->sheet.cavity};
+        (fw_openings){&b->sheet.slice.voids, &b->sheet.slice.void_regions, b->sheet.cavity, 0};
     assert_int_equal(fw_peel_solve(&b->setup, &b->sheet.slice, b->sheet.posts_only,
                                    &b->sheet.openings, b->memo, &b->sheet.peel, NULL),
                      FW_OK);

@@ -46,7 +46,7 @@ static void solve(layer *l, int holes)
     l->budget = (fw_budget){.holder = "memo", .limit = 16u << 20};
     fw_fault fault = {0};
     assert_int_equal(fw_film_memo_create(&l->budget, &l->memo, NULL), FW_OK);
-    const fw_openings openings = {&l->slice.voids, voids, l->sealed};
+    const fw_openings openings = {&l->slice.voids, voids, l->sealed, 0};
     if (fw_peel_solve(&l->setup, &l->slice, l->posts_only, &openings, l->memo, &l->peel, &fault) !=
         FW_OK)
         fail_msg("%s", fault.text);
@@ -316,8 +316,8 @@ static void slots_forget(void **state)
     const double force = l.peel.force_N;
     const uint8_t no_posts[4] = {0};
     const uint32_t open[4] = {UINT32_MAX, UINT32_MAX, UINT32_MAX, UINT32_MAX};
-    const fw_openings none = {&other.slice.voids, &other.slice.void_regions, open};
-    const fw_openings holes = {&l.slice.voids, &l.slice.void_regions, l.sealed};
+    const fw_openings none = {&other.slice.voids, &other.slice.void_regions, open, 0};
+    const fw_openings holes = {&l.slice.voids, &l.slice.void_regions, l.sealed, 0};
     assert_int_equal(
         fw_peel_solve(&other.setup, &other.slice, no_posts, &none, l.memo, &l.peel, NULL), FW_OK);
     assert_true(l.peel.force_N == other.peel.force_N);
@@ -452,7 +452,8 @@ static void a_frame_gives_under_the_cap(void **state)
 }
 
 /* The way back: the same film at the same speed and gap pushes as it pulled (Stefan 1874), cap or
- * no cap; through a frame the layer lags and pushes less. */
+ * no cap. Through a frame of 1000 N/mm the layer lags: 12.883347 N, the equation of motion
+ * integrated by another method (SciPy's Radau, from 3 and from 6 mm away). */
 static void the_way_back_pushes(void **state)
 {
     (void)state;
@@ -468,7 +469,7 @@ static void the_way_back_pushes(void **state)
         if (k % 2 == 0)
             assert_near(l.peel.push_N, 23.5619449, 5e-3);
         else
-            assert_true(l.peel.push_N > 0.4 * 23.56 && l.peel.push_N < 0.7 * 23.56);
+            assert_near(l.peel.push_N, 12.883347, 4e-3);
         layer_free(&l);
     }
     layer still = disc(100, 100, 0);

@@ -96,6 +96,36 @@ static void a_pin_within_a_fence(void **state)
     stage_free(&s);
 }
 
+/* Inside the fence stands a tube: the fence's vents open, the tube's own cavity stays sealed and
+ * pulls. */
+static void a_tube_within_a_fence(void **state)
+{
+    (void)state;
+    double force[2];
+    for (int hollow = 0; hollow < 2; hollow++) {
+        stage s = stage_new(60, 60, 14);
+        s.job.vent_mm = 0.5;
+        s.job.max_peel_N = 1e-6;
+        for (int k = 0; k < 40; k += 5) {
+            stage_box(&s, 10 + k, 10, 0, 13 + k, 13, 14, 255);
+            stage_box(&s, 10 + k, 47, 0, 13 + k, 50, 14, 255);
+            stage_box(&s, 10, 10 + k, 0, 13, 13 + k, 14, 255);
+            stage_box(&s, 47, 10 + k, 0, 50, 13 + k, 14, 255);
+        }
+        stage_box(&s, 22, 22, 0, 38, 38, 14, 255);
+        stage_box(&s, 25, 25, 0, 35, 35, 14, hollow ? 0 : 255);
+        fw_report report = stage_judge(&s);
+        assert_non_null(finding_of(&report, FW_POOR_VENT));
+        assert_int_equal(finding_of(&report, FW_BLIND_CAVITY) != NULL, hollow);
+        force[hollow] = report.layer[10].peel_N;
+        fw_report_free(&report);
+        stage_free(&s);
+    }
+    assert_true(force[1] >
+                0.8 * force[0]); /* vented it would pull a tenth: Stefan's ring, r/R 0.6 */
+    assert_true(force[1] < force[0]);
+}
+
 /* Without a smallest vent any opening is one. */
 static void zero_means_any(void **state)
 {
@@ -210,9 +240,11 @@ static void random_stacks_against_a_slow_cylinder(void **state)
 
 int main(void)
 {
-    const struct CMUnitTest tests[] = {
-        cmocka_unit_test(narrow_slots_do_not_vent), cmocka_unit_test(low_slots_do_not_vent),
-        cmocka_unit_test(a_pin_within_a_fence), cmocka_unit_test(zero_means_any),
-        cmocka_unit_test(random_stacks_against_a_slow_cylinder)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(narrow_slots_do_not_vent),
+                                       cmocka_unit_test(low_slots_do_not_vent),
+                                       cmocka_unit_test(a_pin_within_a_fence),
+                                       cmocka_unit_test(a_tube_within_a_fence),
+                                       cmocka_unit_test(zero_means_any),
+                                       cmocka_unit_test(random_stacks_against_a_slow_cylinder)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
